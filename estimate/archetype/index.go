@@ -1,0 +1,3 @@
+package archetype
+
+type ruleIndex struct{}
