@@ -7,20 +7,20 @@ import "kelvinrow/estimate/result"
 
 // The cautions. New ones go to the end: stored results carry the bits.
 const (
-	Air        result.Caution = 1 << iota // too little outdoor air before or after
-	Combustion                            // open-flued appliances and extract fans
-	InsideWall                            // moisture in inside-insulated walls
-	Cavity                                // cavity filling and driving rain
-	Mould                                 // cold inside surfaces
-	Fire                                  // combustible insulation on tall or occupied buildings
-	Asbestos                              // asbestos, lead paint and other old materials
-	Radon                                 // radon under sealed floors and in tighter buildings
-	Overheating                           // summer overheating
-	Protected                             // protected fabric
-	Species                               // nesting birds and bats
-	Attic                                 // moisture in cold attics
-	HeatPump                              // supply temperature, noise, electrical connection
-	Defaults                              // the number rests mostly on defaults
+	Air         result.Caution = 1 << iota // too little outdoor air before or after
+	Combustion                             // open-flued appliances and extract fans
+	InsideWall                             // moisture in inside-insulated walls
+	Cavity                                 // cavity filling and driving rain
+	Mould                                  // cold inside surfaces
+	Fire                                   // combustible insulation on tall or occupied buildings
+	Asbestos                               // asbestos, lead paint and other old materials
+	Radon                                  // radon under sealed floors and in tighter buildings
+	Overheating                            // summer overheating
+	Protected                              // protected fabric
+	Species                                // nesting birds and bats
+	Attic                                  // moisture in cold attics
+	HeatPump                               // supply temperature, noise, electrical connection
+	Defaults                               // the number rests mostly on defaults
 )
 
 // Info is the wording of one caution.
