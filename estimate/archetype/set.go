@@ -57,11 +57,16 @@ const (
 
 	GeneratorRule    Property = "generator_efficiency"    // share or seasonal performance factor; heating-system word
 	DistributionRule Property = "distribution_efficiency" // share; heating-system word
+
+	AssumedYear      Property = "assumed_year"       // year a building is taken to be built in where none is known; looked up with year 0
+	WindowsNotBefore Property = "windows_not_before" // year: windows of unknown age are taken to be at least as new as this, and never older than the building
 )
 
 // Properties with a word: a canonical word of the field of the same name, or
 // the name of a build-up.
 const (
+	AttachmentWord  Property = "attachment" // by use
+	ExposureWord    Property = "exposure"
 	WallWord        Property = "wall_construction"
 	RoofWord        Property = "roof_type"
 	FloorWord       Property = "floor_type"
@@ -88,7 +93,7 @@ type Key struct {
 
 // Rule is one row of the rules table.
 type Rule struct {
-	ID           string // stable name, for origins and for sampling: see Rule naming in rules.go
+	ID           string // stable name, unique in the table: origins and samples refer to it
 	Property     Property
 	Use          string // canonical word, or "" for any; also "house", "housing", "other" for groups of uses
 	Attachment   string // "" for any
@@ -108,6 +113,11 @@ type Use struct {
 	Word            string
 	IndoorC         float64
 	InternalGainWM2 float64
+
+	// 5th and 95th percentile over buildings of the use; both 0 where none is given.
+	IndoorLowC, IndoorHighC                 float64
+	InternalGainLowWM2, InternalGainHighWM2 float64
+
 	SetpointShare   float64 // share of hours at the set-point
 	MinAirLSM2      float64 // least outdoor airflow, l/s per m2
 	MinAirLSPerson  float64 // and per person
