@@ -1,0 +1,371 @@
+package archetype
+
+import (
+	"errors"
+	"fmt"
+	"math"
+	"slices"
+	"strings"
+
+	"kelvinrow/estimate/building"
+	"kelvinrow/estimate/fabric"
+)
+
+// The years that every property must have an answer for.
+const (
+	firstYear = 1000
+	lastYear  = 2100
+)
+
+// Validate reports everything that is wrong with the set: unknown words,
+// impossible numbers, rules that contradict each other, and holes. All problems
+// come at once, joined. Climates are checked by package climate.
+func (s *Set) Validate() error {
+	v := &validator{set: s}
+	v.uses()
+	v.materials()
+	v.buildups()
+	v.carriers()
+	v.measures()
+	v.economics()
+	v.rules()
+	v.contradictions()
+	v.holes()
+	return errors.Join(v.problems...)
+}
+
+type validator struct {
+	set      *Set
+	problems []error
+}
+
+func (v *validator) add(format string, args ...any) {
+	v.problems = append(v.problems, fmt.Errorf(format, args...))
+}
+
+// within checks a number of a row against bounds; NaN is within none.
+func (v *validator) within(row, what string, x, low, high float64) {
+	if !(x >= low && x <= high) {
+		v.add("%s: %s %g is not between %g and %g", row, what, x, low, high)
+	}
+}
+
+func (v *validator) named(row, source string) {
+	if strings.TrimSpace(source) == "" {
+		v.add("%s: no source", row)
+	}
+}
+
+func (v *validator) uses() {
+	for i, u := range v.set.Uses {
+		row := fmt.Sprintf("use %q", building.UseWords[i])
+		if u.Word != building.UseWords[i] {
+			v.add("%s: missing from the uses table", row)
+			continue
+		}
+		v.within(row, "indoor temperature", u.IndoorC, 0, 35)
+		v.within(row, "internal gain", u.InternalGainWM2, 0, 100)
+		v.within(row, "set-point share", u.SetpointShare, 0, 1)
+		v.within(row, "least air per m2", u.MinAirLSM2, 0, 10)
+		v.within(row, "least air per person", u.MinAirLSPerson, 0, 50)
+		v.within(row, "floor area per person", u.AreaPerPersonM2, 0.5, 1000)
+		v.within(row, "hot water", u.HotWaterKWhM2, 0, 500)
+		if u.IndoorLowC != 0 || u.IndoorHighC != 0 {
+			v.ordered(row, "indoor temperature", u.IndoorLowC, u.IndoorC, u.IndoorHighC)
+		}
+		if u.InternalGainLowWM2 != 0 || u.InternalGainHighWM2 != 0 {
+			v.ordered(row, "internal gain", u.InternalGainLowWM2, u.InternalGainWM2, u.InternalGainHighWM2)
+		}
+		v.named(row, u.Source)
+	}
+}
+
+func (v *validator) ordered(row, what string, low, typical, high float64) {
+	if !(low <= typical && typical <= high) {
+		v.add("%s: %s is not low <= typical <= high: %g, %g, %g", row, what, low, typical, high)
+	}
+}
+
+func (v *validator) materials() {
+	seen := map[string]bool{}
+	for _, m := range v.set.Materials {
+		row := fmt.Sprintf("material %q", m.Name)
+		if m.Name == "" || seen[m.Name] {
+			v.add("%s: name empty or used twice", row)
+		}
+		seen[m.Name] = true
+		v.within(row, "conductivity", m.ConductivityWMK, 0.001, 500)
+		v.named(row, m.Source)
+	}
+}
+
+func (v *validator) buildups() {
+	directions := map[string]fabric.Direction{"wall": fabric.Horizontal, "roof": fabric.Up, "floor": fabric.Down}
+	seen := map[string]bool{}
+	for _, b := range v.set.Buildups {
+		row := fmt.Sprintf("build-up %q", b.Name)
+		if b.Name == "" || seen[b.Name] {
+			v.add("%s: name empty or used twice", row)
+		}
+		seen[b.Name] = true
+		if d, ok := directions[b.Element]; !ok {
+			v.add("%s: unknown element %q", row, b.Element)
+		} else if d != b.Direction {
+			v.add("%s: direction of heat flow does not fit a %s", row, b.Element)
+		}
+		if len(b.Layers) == 0 {
+			v.add("%s: no layers", row)
+		}
+		for i, l := range b.Layers {
+			row := fmt.Sprintf("%s, layer %d (%s)", row, i+1, l.Name)
+			conductivity := l.ConductivityWMK
+			if m, ok := pick(v.set.Materials, func(m *Material) bool { return m.Name == l.Name }); ok && conductivity == 0 {
+				conductivity = m.ConductivityWMK
+			}
+			switch {
+			case l.ResistanceM2KW != 0:
+				v.within(row, "resistance", l.ResistanceM2KW, 0.001, 20)
+				v.within(row, "thickness", l.ThicknessM, 0, 5)
+			case conductivity == 0:
+				v.add("%s: neither a known material nor a conductivity nor a resistance", row)
+			default:
+				v.within(row, "conductivity", conductivity, 0.001, 500)
+				v.within(row, "thickness", l.ThicknessM, 0.0001, 5)
+			}
+			if l.BridgeShare != 0 {
+				v.within(row, "bridge share", l.BridgeShare, 0, 0.9)
+				v.within(row, "bridge conductivity", l.BridgeConductivityWMK, 0.001, 500)
+				v.within(row, "thickness of a bridged layer", l.ThicknessM, 0.0001, 5)
+			}
+		}
+		v.named(row, b.Source)
+	}
+}
+
+func (v *validator) carriers() {
+	words := building.Words(building.CarrierField)
+	seen := map[string]bool{}
+	for _, c := range v.set.Carriers {
+		row := fmt.Sprintf("carrier %q", c.Word)
+		switch {
+		case !slices.Contains(words, c.Word):
+			v.add("%s: unknown word; known are %s", row, strings.Join(words, ", "))
+		case seen[c.Word]:
+			v.add("%s: twice", row)
+		}
+		seen[c.Word] = true
+		v.within(row, "price", c.PricePerKWh, 0, 1000)
+		v.within(row, "price rise", c.PriceRise, -0.2, 0.2)
+		v.within(row, "CO2", c.CO2KgKWh, -1, 5)
+		v.named(row, c.Source)
+	}
+	for _, w := range words {
+		if !seen[w] {
+			v.add("carrier %q: missing from the carriers table", w)
+		}
+	}
+}
+
+func (v *validator) measures() {
+	seen := map[string]bool{}
+	for _, m := range v.set.Measures {
+		row := fmt.Sprintf("measure %q", m.Key)
+		if m.Key == "" || seen[m.Key] {
+			v.add("%s: key empty or used twice", row)
+		}
+		seen[m.Key] = true
+		if m.Label == "" {
+			v.add("%s: no label", row)
+		}
+		if !slices.Contains(measureUnits, m.Unit) {
+			v.add("%s: unknown unit %q; known are %s", row, m.Unit, strings.Join(measureUnits, ", "))
+		}
+		v.within(row, "fixed cost", m.FixedCost, 0, 1e9)
+		v.within(row, "unit cost", m.UnitCost, 0, 1e9)
+		v.within(row, "life", m.LifeYears, 1, 200)
+		v.within(row, "upkeep share", m.UpkeepShare, 0, 1)
+		for _, name := range sortedKeys(m.Target) {
+			if x := m.Target[name]; math.IsNaN(x) || math.IsInf(x, 0) {
+				v.add("%s: target %s is not a number", row, name)
+			}
+		}
+		for _, t := range measureTargets[m.Key] {
+			if x, ok := m.Target[t.name]; !ok {
+				v.add("%s: target %s is missing", row, t.name)
+			} else {
+				v.within(row, "target "+t.name, x, t.low, t.high)
+			}
+		}
+		v.named(row, m.Source)
+	}
+}
+
+func (v *validator) economics() {
+	e := v.set.Economics
+	if e.Currency == "" {
+		v.add("economics: no currency")
+	}
+	v.within("economics", "discount rate", e.DiscountRate, -0.5, 1)
+	v.within("economics", "period", e.PeriodYears, 1, 200)
+	v.named("economics", e.Source)
+}
+
+func (v *validator) rules() {
+	elements := map[string]string{}
+	for _, b := range v.set.Buildups {
+		elements[b.Name] = b.Element
+	}
+	seen := map[string]bool{}
+	for i := range v.set.Rules {
+		r := &v.set.Rules[i]
+		row := fmt.Sprintf("rule %q", r.ID)
+		if r.ID == "" || seen[r.ID] {
+			v.add("%s: id empty or used twice", row)
+		}
+		seen[r.ID] = true
+		info, ok := r.Property.Info()
+		if !ok {
+			v.add("%s: unknown property %q", row, r.Property)
+			continue
+		}
+		v.matchColumns(row, r, &info)
+		if info.IsWord {
+			switch {
+			case r.Typical != 0 || r.Low != 0 || r.High != 0:
+				v.add("%s: %s takes a word, not a number", row, r.Property)
+			case info.Element != "" && elements[r.Word] != info.Element:
+				v.add("%s: no %s build-up is called %q", row, info.Element, r.Word)
+			case info.Element == "" && !slices.Contains(building.Words(info.WordField), r.Word):
+				v.add("%s: unknown word %q for %s", row, r.Word, r.Property)
+			case r.Property == VentilationWord && r.Word == building.VentilationUnknown.String():
+				v.add("%s: an unknown ventilation needs a definite word", row)
+			}
+		} else {
+			if r.Word != "" {
+				v.add("%s: %s takes a number, not the word %q", row, r.Property, r.Word)
+			}
+			v.within(row, "low", r.Low, info.Min, info.Max)
+			v.within(row, "typical", r.Typical, info.Min, info.Max)
+			v.within(row, "high", r.High, info.Min, info.Max)
+			v.ordered(row, string(r.Property), r.Low, r.Typical, r.High)
+		}
+		v.within(row, "shared part of the spread", r.Shared, 0, 1)
+		v.named(row, r.Source)
+	}
+}
+
+func (v *validator) matchColumns(row string, r *Rule, info *PropertyInfo) {
+	if r.Use != "" && r.Use != groupHouse && r.Use != groupHousing && r.Use != groupOther {
+		if _, ok := building.WordIndex(building.UseField, r.Use); !ok {
+			v.add("%s: unknown use %q", row, r.Use)
+		}
+	}
+	if r.Attachment != "" {
+		if _, ok := building.WordIndex(building.AttachmentField, r.Attachment); !ok {
+			v.add("%s: unknown attachment %q", row, r.Attachment)
+		}
+	}
+	if from, to := r.years(); from > to {
+		v.add("%s: years run backwards: %d to %d", row, r.YearFrom, r.YearTo)
+	}
+	if r.Construction == "" {
+		return
+	}
+	if !info.ByConstruction {
+		v.add("%s: %s does not depend on construction, leave %q out", row, r.Property, r.Construction)
+	} else if _, ok := building.WordIndex(info.ConstructionField, r.Construction); !ok {
+		v.add("%s: unknown word %q for %s", row, r.Construction, info.ConstructionField)
+	}
+}
+
+// contradictions finds pairs of rules that can match the same building, that
+// tie in specificity and that give different values.
+func (v *validator) contradictions() {
+	rows := map[Property][]int{}
+	for i := range v.set.Rules {
+		rows[v.set.Rules[i].Property] = append(rows[v.set.Rules[i].Property], i)
+	}
+	for _, info := range propertyCatalogue {
+		same := rows[info.Property]
+		for i, ia := range same {
+			for _, ib := range same[i+1:] {
+				a, b := &v.set.Rules[ia], &v.set.Rules[ib]
+				if overlap(a, b) && compareSpecificity(a, b) == 0 && !sameAnswer(a, b) {
+					v.add("rules %q and %q are equally specific, overlap and disagree on %s: %s against %s",
+						a.ID, b.ID, info.Property, a.answer(), b.answer())
+				}
+			}
+		}
+	}
+}
+
+func overlap(a, b *Rule) bool {
+	either := func(x, y string) bool { return x == "" || y == "" || x == y }
+	af, at := a.years()
+	bf, bt := b.years()
+	if af > bt || bf > at || !either(a.Attachment, b.Attachment) ||
+		!either(a.Construction, b.Construction) || !either(a.Region, b.Region) {
+		return false
+	}
+	for u := range building.Use(building.NumUses) {
+		if useMatches(a.Use, u) && useMatches(b.Use, u) {
+			return true
+		}
+	}
+	return false
+}
+
+func sameAnswer(a, b *Rule) bool {
+	return a.Word == b.Word && a.Typical == b.Typical && a.Low == b.Low && a.High == b.High && a.Shared == b.Shared
+}
+
+func (r *Rule) answer() string {
+	if r.Word != "" {
+		return r.Word
+	}
+	return fmt.Sprintf("%g (%g to %g)", r.Typical, r.Low, r.High)
+}
+
+// holes finds combinations of use, attachment, year and construction without an
+// answer. Rules for regions are an addition: the answer must exist without.
+func (v *validator) holes() {
+	rows := map[Property][]int32{}
+	for i := range v.set.Rules {
+		rows[v.set.Rules[i].Property] = append(rows[v.set.Rules[i].Property], int32(i))
+	}
+	for _, info := range propertyCatalogue {
+		if len(rows[info.Property]) == 0 {
+			v.add("no rule gives %s", info.Property)
+			continue
+		}
+		t := newPropertyTable(v.set.Rules, rows[info.Property])
+		constructions := []string{""}
+		if info.ByConstruction {
+			constructions = building.Words(info.ConstructionField)
+		}
+		first, more := "", 0
+		for _, c := range constructions {
+			for cell := range useCells {
+				use, attachment := building.Use(cell/building.NumAttachments), building.Attachment(cell%building.NumAttachments)
+				from, to, hole := t.at(use, attachment, c, "").hole()
+				if !hole {
+					continue
+				}
+				if first != "" {
+					more++
+					continue
+				}
+				first = fmt.Sprintf("no rule gives %s for use %s, attachment %s, years %d to %d", info.Property, use, attachment, from, to)
+				if c != "" {
+					first += fmt.Sprintf(", %s %s", info.ConstructionField, c)
+				}
+			}
+		}
+		switch {
+		case more > 0:
+			v.add("%s, nor for %d more combinations", first, more)
+		case first != "":
+			v.add("%s", first)
+		}
+	}
+}
