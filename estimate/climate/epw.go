@@ -120,7 +120,9 @@ func ReadEPWHours(r io.Reader) ([]Hour, EPWHeader, error) {
 			problems = append(problems, fmt.Errorf("line %d: %w", n, err))
 		}
 	}
-	if err := lines.Err(); err != nil {
+	if err := lines.Err(); errors.Is(err, bufio.ErrTooLong) {
+		problems = append(problems, fmt.Errorf("line %d: longer than %d bytes", n+1, maxLineBytes))
+	} else if err != nil {
 		problems = append(problems, fmt.Errorf("line %d: %w", n+1, err))
 	}
 	if len(problems) >= maxProblems {

@@ -89,7 +89,7 @@ func sourceText(h *EPWHeader, design string, filled [NumQuantities]int) string {
 	text := "weather file in EPW format: " + strings.Join(place, ", ") + "; " + design
 	for q, n := range filled {
 		if n > 0 {
-			text += fmt.Sprintf("; %s missing in %d hours and filled from the month's same hour of the day", Quantity(q), n)
+			text += fmt.Sprintf("; hours without %s, filled from the month's same hour of the day: %d", Quantity(q), n)
 		}
 	}
 	return text

@@ -17,6 +17,11 @@ const GroundReflectance = 0.2
 //
 //	H_T = H (D + f_d/2 + rho/2)
 //
+// Beside the hours of a typical year of a North Sea coast, with isotropic sky,
+// the year is 4 % low on the north, 7 % high on the south and 8 to 13 % high on
+// west and east; the south is 14 to 38 % high from October to February, because
+// that coast's sky is more diffuse than the correlation has it.
+//
 // East and west are equal: the representative day is symmetric about noon.
 // Where K_T is above 0.8, the end of the correlation, the beam stays at what
 // 0.8 gives and the rest counts as diffuse; so a polar month with little but
