@@ -6,7 +6,8 @@ import (
 )
 
 // Derived from Hitchin's formula (CIBSE TM41), base 15.5 C, 31 days, k 0.71.
-// Tolerance 0.02: a unit of the last printed figure of the larger values.
+// Tolerance: half a unit of the printed decimal for the first three, 0.02 for
+// the two printed to hundredths.
 func TestDegreeDaysHitchin(t *testing.T) {
 	t.Parallel()
 	for _, c := range []struct{ mean, want, tol float64 }{
