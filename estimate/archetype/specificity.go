@@ -1,24 +1,30 @@
 package archetype
 
-import "kelvinrow/estimate/building"
+import (
+	"math/bits"
 
-// How specific a rule is, in this order:
+	"kelvinrow/estimate/building"
+)
+
+// compareSpecificity returns 1 where a is the more specific rule, -1 where b
+// is, 0 where neither is. In this order:
 //
 //  1. The number of filled match columns among use, attachment, years (either
 //     end), construction and region: more is more specific.
-//  2. The use column: a single use, then "house", then "housing" or "other",
-//     then empty.
-//  3. The years: a span that lies within the other's and is shorter.
+//  2. Where both fill the same columns, the use: a single use before "house",
+//     that before "housing" or "other".
+//  3. Then the years: a span that lies within the other's and is shorter.
 //
-// Two rules that none of these tells apart, that can both match a building and
+// Two rules that these do not tell apart, that can both match a building and
 // that give different values contradict each other: Validate names both. Where
 // they give the same value the one with the lower ID answers.
-//
-// compareSpecificity returns 1 where a is the more specific rule, -1 where b
-// is, 0 where they tie.
 func compareSpecificity(a, b *Rule) int {
-	if d := filledColumns(a) - filledColumns(b); d != 0 {
+	ca, cb := filledColumns(a), filledColumns(b)
+	if d := bits.OnesCount8(ca) - bits.OnesCount8(cb); d != 0 {
 		return sign(d)
+	}
+	if ca != cb {
+		return 0
 	}
 	if d := useRank(a.Use) - useRank(b.Use); d != 0 {
 		return sign(d)
@@ -46,16 +52,16 @@ func sign(d int) int {
 	return 0
 }
 
-func filledColumns(r *Rule) int {
-	n := 0
-	for _, filled := range [...]bool{
+// filledColumns has a bit for every match column that is filled.
+func filledColumns(r *Rule) (columns uint8) {
+	for i, filled := range [...]bool{
 		r.Use != "", r.Attachment != "", r.YearFrom != 0 || r.YearTo != 0, r.Construction != "", r.Region != "",
 	} {
 		if filled {
-			n++
+			columns |= 1 << i
 		}
 	}
-	return n
+	return columns
 }
 
 // Words for groups of uses.
