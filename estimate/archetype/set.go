@@ -157,7 +157,7 @@ type Carrier struct {
 type Measure struct {
 	Key         string
 	Label       string
-	Unit        string  // what Quantity counts: "m2", "m3/h", "dwelling", "building", "kW"
+	Unit        string  // what Quantity counts: "m2" (treated area), "m2 floor" (heated floor area), "m3/h", "dwelling", "building", "kW"
 	FixedCost   float64 // per building
 	UnitCost    float64 // per unit
 	LifeYears   float64

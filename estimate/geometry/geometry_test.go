@@ -120,7 +120,7 @@ func TestCheckPublishedShapes(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	shapes := map[string]bool{}
+	shapes, aside := map[string]bool{}, 0
 	for _, row := range rows[1:] {
 		key := strings.Join(row[:5], " ")
 		if shapes[key] {
@@ -140,7 +140,10 @@ func TestCheckPublishedShapes(t *testing.T) {
 			RuleStoreyHeightM: 3.2, FloorThicknessM: 0.3, AspectRatio: 1, RoofType: "flat",
 		})
 		if len(out.Notes) > 0 {
-			t.Logf("%s: %v", key, out.Notes)
+			// One shape juts out above: its roof is larger than its walls can enclose.
+			if aside++; aside > 1 {
+				t.Errorf("%s: %v", key, out.Notes)
+			}
 			continue
 		}
 		near(t, key+": wall", out.GrossWallM2, wall, 1e-9)
