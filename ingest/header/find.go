@@ -1,0 +1,240 @@
+package header
+
+import (
+	"fmt"
+	"strings"
+
+	"kelvinrow/estimate/building"
+	"kelvinrow/ingest/cell"
+	"kelvinrow/ingest/sheet"
+)
+
+// Line is one of the first rows of a sheet, as text.
+type Line struct {
+	Row   int
+	Cells []string
+}
+
+// Column is one column of a table and what it is taken for.
+type Column struct {
+	Index  int
+	Header string
+	Key    string // "" when it is not read
+	Sense  string
+	Unit   cell.Unit
+	Kind   building.Kind // Default unless the header says how firm the values are
+	Year   int
+	How    string // how it was recognised, in words
+
+	candidates []Candidate
+}
+
+// Letters names the column.
+func (c *Column) Letters() string { return sheet.ColumnLetters(c.Index) }
+
+// Table is the layout of one sheet.
+type Table struct {
+	Row      int // of the header; the lower one of two
+	DataFrom int // first row below header and units
+	Columns  []Column
+	Known    int // columns recognised
+}
+
+// Find looks for the header among the first rows: the row most of whose cells
+// are recognised. It reports ok false when no row has two such cells and no
+// mapping names one.
+func Find(lines []Line, merges []sheet.Merge, evidence []Evidence, mapped []Entry) (Table, bool) {
+	best, bestScore := Table{}, 0
+	for i := range lines {
+		if len(lines[i].Cells) == 0 {
+			continue
+		}
+		t, score := read(lines, i, merges, evidence, mapped)
+		if score > bestScore {
+			best, bestScore = t, score
+		}
+	}
+	return best, bestScore >= 4
+}
+
+// read takes line i for the header and says how well that fits.
+func read(lines []Line, i int, merges []sheet.Merge, evidence []Evidence, mapped []Entry) (Table, int) {
+	l := lines[i]
+	t := Table{Row: l.Row, DataFrom: l.Row + 1}
+	var above []string
+	if i > 0 && lines[i-1].Row == l.Row-1 {
+		above = filled(lines[i-1], merges, len(l.Cells))
+	}
+	units := map[int]cell.Unit{}
+	if i+1 < len(lines) && lines[i+1].Row == l.Row+1 {
+		if u, ok := unitRow(lines[i+1]); ok {
+			units = u
+			t.DataFrom = lines[i+1].Row + 1
+		}
+	}
+	width := len(l.Cells)
+	if len(above) > width {
+		width = len(above)
+	}
+	score, texts := 0, 0
+	for c := range width {
+		own, group := "", ""
+		if c < len(l.Cells) {
+			own = strings.TrimSpace(l.Cells[c])
+		}
+		if c < len(above) {
+			group = strings.TrimSpace(above[c])
+		}
+		var ev Evidence
+		if c < len(evidence) {
+			ev = evidence[c]
+		}
+		col := Column{Index: c, Header: own}
+		if own == "" && group == "" {
+			continue
+		}
+		if own == "" && !mergedDown(merges, c, l.Row) {
+			continue
+		}
+		if hasNumber(own) {
+			score -= 2
+		}
+		with := func(h string) []Candidate {
+			if u, ok := units[c]; ok {
+				h += " [" + u.Name + "]"
+			}
+			return Recognise(h, ev)
+		}
+		col.candidates = with(own)
+		if group != "" && group != own {
+			// "U-value" below "Wall": both together say more, when they say it exactly.
+			both := with(group + " " + own)
+			if own == "" {
+				both = with(group)
+			}
+			if len(both) > 0 && (len(col.candidates) == 0 || both[0].Rank < looseRank) {
+				col.candidates = both
+				col.Header = strings.TrimSpace(group + " " + own)
+			}
+		}
+		if own != "" {
+			texts++
+		}
+		if len(col.candidates) > 0 {
+			k := col.candidates[0]
+			switch {
+			case k.Key == ignoredKey:
+				score++
+			case k.Rank < looseRank:
+				score += 3
+			default:
+				score += 2
+			}
+		}
+		for _, e := range mapped {
+			if !e.Fixed && !e.Unread && own != "" && sameHeader(e.Column, own) {
+				score += 3
+			}
+		}
+		t.Columns = append(t.Columns, col)
+	}
+	if texts < 2 && len(mapped) == 0 {
+		return t, 0
+	}
+	return t, score
+}
+
+func hasNumber(s string) bool {
+	n, st := cell.ParseNumber(s, cell.Undecided)
+	return st == cell.OK && n.Unit.Name == "" && (n.Value < 1950 || n.Value > 2100)
+}
+
+func sameHeader(a, b string) bool {
+	return strings.EqualFold(strings.TrimSpace(a), strings.TrimSpace(b)) || cell.Fold(a) == cell.Fold(b) && cell.Fold(a) != ""
+}
+
+// filled spreads the text of a merged range over its cells. A range over the
+// whole width is a title, not a group.
+func filled(l Line, merges []sheet.Merge, width int) []string {
+	out := make([]string, max(width, len(l.Cells)))
+	copy(out, l.Cells)
+	for _, m := range merges {
+		if m.FirstRow <= l.Row && l.Row <= m.LastRow && m.FirstCol < len(l.Cells) {
+			if m.LastCol-m.FirstCol+1 >= width && width > 3 {
+				out[m.FirstCol] = ""
+				continue
+			}
+			for c := m.FirstCol; c <= m.LastCol && c < len(out); c++ {
+				out[c] = l.Cells[m.FirstCol]
+			}
+		}
+	}
+	n := 0
+	for _, s := range out {
+		if strings.TrimSpace(s) != "" {
+			n++
+		}
+	}
+	if n < 2 { // a title stands alone
+		return nil
+	}
+	return out
+}
+
+func mergedDown(merges []sheet.Merge, col, row int) bool {
+	for _, m := range merges {
+		if m.FirstCol <= col && col <= m.LastCol && m.FirstRow < row && row <= m.LastRow {
+			return true
+		}
+	}
+	return false
+}
+
+// unitRow reports the units of a second header row: every filled cell is a unit
+// or at least no number, and one is a unit.
+func unitRow(l Line) (map[int]cell.Unit, bool) {
+	units := map[int]cell.Unit{}
+	other := 0
+	for c, s := range l.Cells {
+		s = strings.TrimSpace(s)
+		if s == "" || s == "-" || s == "–" || s == "[-]" || s == "(-)" {
+			continue
+		}
+		if u, ok := cell.ParseUnit(s); ok {
+			units[c] = u
+			continue
+		}
+		if hasNumber(s) {
+			return nil, false
+		}
+		other++
+	}
+	return units, len(units) > 0 && len(units) >= other
+}
+
+// Problem is what Settle could not settle.
+type Problem struct {
+	Key      string
+	Check    string
+	Text     string
+	Fix      string
+	Severity Severity
+	Columns  []int
+}
+
+// Severity says what a problem does.
+type Severity uint8
+
+const (
+	Note   Severity = iota
+	Unread          // the field is not read
+	Stop            // the sheet is not read
+)
+
+func name(cols []*Column) string {
+	var s []string
+	for _, c := range cols {
+		s = append(s, fmt.Sprintf("%s %q", c.Letters(), c.Header))
+	}
+	return strings.Join(s, ", ")
+}
