@@ -53,7 +53,9 @@ type Element struct {
 	Ground   ground.Slab
 	// Floors over a vented void and heated basements, with what the ground
 	// model needs beside Ground; zero elsewhere.
-	VoidHeightM, VentAreaM2M, VoidWallUWM2K, BasementDepthM float64
+	VoidHeightM, VentAreaM2M, VoidWallUWM2K float64
+	VoidWindMS, VoidShelter                 float64 // wind at 10 m and its shielding factor f_w
+	BasementDepthM                          float64
 
 	// Windows.
 	Orientation climate.Orientation
