@@ -44,10 +44,10 @@ func Nearest(s string, words []string) string {
 	for _, w := range words {
 		g := Fold(w)
 		d := distance(f, g)
-		if strings.Contains(f, g) || strings.Contains(g, f) {
+		if len(g) > 4 && strings.Contains(f, g) || len(f) > 4 && strings.Contains(g, f) {
 			d = min(d, 2)
 		}
-		if d < bestD && d*2 <= max(len(f), len(g)) {
+		if d < bestD && d*3 <= max(len(f), len(g)) {
 			best, bestD = w, d
 		}
 	}

@@ -30,7 +30,6 @@ const (
 type Number struct {
 	Value     float64
 	Unit      Unit // zero when the cell has none
-	Percent   bool
 	About     bool // "approx. 120"
 	Ambiguous bool // "1.234": the sign could be either
 }
@@ -128,14 +127,12 @@ func ParseNumber(s string, d Decimal) (Number, Status) {
 		case aboutWords[c] || c == "" && strings.Trim(tail, "()[]?~.*±") == "":
 			n.About = true
 		case tail == ",-" || tail == ".-" || tail == "-":
-		case tail == "%":
-			n.Percent = true
 		default:
 			u, ok := ParseUnit(tail)
 			if !ok {
 				return Number{}, Bad
 			}
-			n.Unit, n.Percent = u, u.Name == "%"
+			n.Unit = u
 		}
 	}
 	return n, OK

@@ -47,7 +47,7 @@ var units = []struct {
 	{Unit{"m3/h", "m3/h", 1, ""}, "m3/h m3/hr m3/hour m3h cmh m3/std m3/t m3/u m3/uur m3/time"},
 	{Unit{"m3/s", "m3/h", 3600, ""}, "m3/s"},
 	{Unit{"l/s", "m3/h", 3.6, ""}, "l/s litres/s l/sec ls"},
-	{Unit{"cfm", "m3/h", 1.69901082, ""}, "cfm ft3/min"},
+	{Unit{"cfm", "m3/h", 1.699010796, ""}, "cfm ft3/min"},
 	{Unit{"W/(m2K)", "W/(m2K)", 1, ""}, "w/m2k w/m2*k w/m2.k w/k.m2 w/km2 wm-2k-1 w/m2/k w/m2c"},
 	{Unit{"Btu/(h ft2 F)", "W/(m2K)", 5.678263341, ""}, "btu/hft2f btu/h.ft2.f btu/h·ft2·f btu/hrft2f"},
 	{Unit{"%", "share", 0.01, ""}, "% percent prozent pct procent pourcent porcentaje"},

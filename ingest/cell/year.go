@@ -24,6 +24,7 @@ var (
 	reSpan    = regexp.MustCompile(`^(\d{4}) ?(?:-|–|—|to|bis|a|à|tot|till|til|hasta|y|and|und|et|/|\.\.) ?(\d{4}|\d{2})$`)
 	reDecade  = regexp.MustCompile(`^(?:les )?(?:annees |anos |jaren |die |the )?(\d{3}0|\d0)(?: ?s| ?er| ?erne| ?ern| ?er jahre| ?tal| ?talet| ?tallet| ?ties)?$`)
 	reCentury = regexp.MustCompile(`^(?:the |siecle |siglo |s )?(1[0-9]|2[01]|xi|xii|xiii|xiv|xv|xvi|xvii|xviii|xix|xx|xxi) ?(?:st|nd|rd|th|e|eme|de)? ?(?:c|cent|century|jh|jhd|jhdt|jahrhundert|siecle|s|eeuw|arhundrede|arhundre|arhundradet|siglo)?$`)
+	reTwo     = regexp.MustCompile(`^\d{4} ?/ ?\d{4}$`) // "built / changed"
 	reYear    = regexp.MustCompile(`^\d{4}$`)
 	reInDate  = regexp.MustCompile(`^(?:\d{1,2}[./-]\d{1,2}[./-](\d{4})|\d{1,2}[./-](\d{4})|(\d{4})[./-]\d{1,2}(?:[./-]\d{1,2})?(?:[T ].*)?)$`)
 )
@@ -74,6 +75,9 @@ func ParseYear(s string, thisYear int) (Span, Status) {
 	}
 	if sp, ok := spanOf(low); ok {
 		return sp, OK
+	}
+	if reTwo.MatchString(low) {
+		return Span{}, Bad
 	}
 	switch {
 	case strings.HasPrefix(low, "<"), strings.HasPrefix(low, "≤"), strings.HasPrefix(low, "-1"), strings.HasPrefix(low, "–1"):

@@ -207,6 +207,7 @@ func Row(v *Values, nextYear int) []Problem {
 				fmt.Sprintf("%s %s is before the year built, %s", lower(f.Info().Label), num(v[f].High), num(built.Low)), "check both years"})
 		}
 	}
+	refused := ""
 rules:
 	for i := range Rules {
 		r := &Rules[i]
@@ -217,7 +218,13 @@ rules:
 			}
 			args[j] = v[f].Number
 		}
+		if refused == r.Name {
+			continue // the row is set aside for the same already
+		}
 		if text := r.Test(args); text != "" {
+			if r.Severity == finding.Error {
+				refused = r.Name
+			}
 			report(Problem{r.Name, r.Severity, r.Needs[0], r.Drop, text, r.Fix})
 		}
 	}

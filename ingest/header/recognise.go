@@ -200,6 +200,10 @@ func parse(header string) parsed {
 // cutUnit takes a unit off the end or the front of a header without brackets.
 func (p *parsed) cutUnit(s string) string {
 	words := strings.Fields(s)
+	if u, ok := cell.ParseUnit(s); ok && plausible(words) {
+		p.setUnit(u)
+		return s
+	}
 	for n := min(3, len(words)-1); n > 0; n-- {
 		if u, ok := cell.ParseUnit(strings.Join(words[len(words)-n:], " ")); ok && plausible(words[len(words)-n:]) {
 			p.setUnit(u)
@@ -240,8 +244,8 @@ func (p *parsed) setUnit(u cell.Unit) {
 
 // plausible keeps single letters that are words or names from being units.
 func plausible(words []string) bool {
-	s := strings.Trim(strings.Join(words, ""), ",;:.- ")
-	return len(s) > 1 || s == "%"
+	s := strings.ToLower(strings.Trim(strings.Join(words, ""), ",;:.- "))
+	return (len(s) > 1 || s == "%") && s != "meter" // a meter counts heat
 }
 
 var stops = map[string]bool{"total": true, "gesamt": true, "the": true, "of": true, "der": true, "des": true, "gebaudes": true, "building": true, "gebaude": true, "totale": true, "annual": true, "in": true, "ca": true, "approx": true, "total de": true}
@@ -294,6 +298,9 @@ func (h *parsed) candidate(e entry, rank int, ev Evidence) (Candidate, bool) {
 	c := Candidate{Key: e.key, Sense: e.sense, Rank: rank, Unit: h.unit, Year: h.year}
 	f, ok := building.FieldByKey(e.key)
 	if !ok {
+		if e.key == ignoredKey {
+			c.Unit = cell.Unit{}
+		}
 		if e.key != ignoredKey && e.key != DataYearKey && h.unit.Name != "" {
 			return c, false
 		}
@@ -336,6 +343,9 @@ func (h *parsed) candidate(e entry, rank int, ev Evidence) (Candidate, bool) {
 			if f == building.YearBuilt {
 				return c, false
 			}
+		}
+		if ev.Filled > 3 && (ev.Years+ev.Dates)*10 < ev.Filled-1 {
+			c.Rank += 4 // "Construction" above words names the walls
 		}
 	case building.Word, building.YesNo:
 		if h.unit.Name != "" {

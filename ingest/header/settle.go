@@ -329,14 +329,18 @@ func label(key string) string {
 
 // required checks that the sheet is one of buildings.
 func (s *settler) required() {
-	if s.p.Stopped() {
-		return
-	}
 	known := 0
 	for _, f := range s.p.Fields {
 		if f.Key != IDKey && f.Key != DataDateKey && f.Key != DataYearKey && f.Key != HouseKey {
 			known++
 		}
+	}
+	if s.p.Stopped() {
+		// Two columns that could be an id, and nothing else, are no table of buildings.
+		if known == 0 && s.p.Problems[0].Key == IDKey && s.p.Problems[0].Check == "ambiguous-column" && len(s.p.Problems) == 1 {
+			s.p.Problems, s.p.Skip = nil, "beside columns that could be building ids it has no known column"
+		}
+		return
 	}
 	size := s.p.Has(building.FloorArea.Key()) || s.p.Has(building.Volume.Key()) || s.p.Has(building.GrossVolume.Key())
 	if len(s.p.Columns(IDKey)) == 0 {
@@ -348,6 +352,11 @@ func (s *settler) required() {
 		for i := range s.t.Columns {
 			if c := &s.t.Columns[i]; c.Key == "" || c.Key == building.Name.Key() {
 				free = append(free, c)
+			}
+		}
+		if len(free) == 0 {
+			for i := range s.t.Columns {
+				free = append(free, &s.t.Columns[i])
 			}
 		}
 		if len(free) > 8 {

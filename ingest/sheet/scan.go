@@ -131,8 +131,10 @@ func (s *scanner) start(e xml.StartElement) error {
 			}
 		}
 	case "v":
-		s.inValue = true
-		s.value = s.value[:0]
+		// A value beside inline text is a leftover of the writing program.
+		if s.inValue = s.kind != "inlineStr"; s.inValue {
+			s.value = s.value[:0]
+		}
 	case "t":
 		s.inValue = s.kind == "inlineStr"
 	case "rPh":

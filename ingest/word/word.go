@@ -23,6 +23,7 @@ type synonym struct {
 }
 
 type field struct {
+	raw   map[string]string // lower case, not folded: "rådhus" is no "radhus"
 	exact map[string]string
 	long  []synonym // those that may be looked for inside a text, longest first
 }
@@ -35,7 +36,10 @@ var fields = func() map[building.Field]*field {
 	}
 	add := func(f building.Field, written, word string) {
 		if m[f] == nil {
-			m[f] = &field{exact: map[string]string{}}
+			m[f] = &field{raw: map[string]string{}, exact: map[string]string{}}
+		}
+		if low := strings.ToLower(written); m[f].raw[low] == "" {
+			m[f].raw[low] = word
 		}
 		k := cell.Fold(written)
 		if k == "" {
@@ -74,6 +78,9 @@ func Find(f building.Field, text string) (string, bool) {
 	words := fields[f]
 	if words == nil {
 		return "", false
+	}
+	if w, ok := words.raw[strings.ToLower(strings.TrimSpace(text))]; ok {
+		return w, true
 	}
 	t := cell.Fold(text)
 	if w, ok := words.exact[t]; ok {
