@@ -121,7 +121,7 @@ func records(ctx context.Context, tx pgx.Tx, portfolio, id string, yield func(bu
 	}
 	query := "select " + strings.Join(columns, ", ") + " from kelvinrow.record where portfolio = $1"
 	args := []any{pgx.QueryResultFormatsByOID{
-		pgtype.TextOID: pgx.BinaryFormatCode, pgtype.Float8OID: pgx.BinaryFormatCode, pgtype.BoolOID: pgx.BinaryFormatCode,
+		pgtype.TextOID: pgx.BinaryFormatCode, pgtype.TextArrayOID: pgx.BinaryFormatCode, pgtype.Float8OID: pgx.BinaryFormatCode, pgtype.BoolOID: pgx.BinaryFormatCode,
 		pgtype.Int2OID: pgx.BinaryFormatCode, pgtype.Int4OID: pgx.BinaryFormatCode, pgtype.Int8OID: pgx.BinaryFormatCode,
 	}, portfolio}
 	if id != "" {
