@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"sort"
 
-	"kelvinrow/estimate/building"
 	"kelvinrow/ingest/finding"
 )
 
@@ -74,6 +73,3 @@ func (c *collector) all() []finding.Finding {
 	finding.Sort(c.list)
 	return c.list
 }
-
-// fieldOf is the key of a field as findings have it.
-func fieldOf(f building.Field) string { return f.Key() }

@@ -181,6 +181,34 @@ Geb.-Nr.;Straße;Wohnfläche [m²];Baujahr;Fenster erneuert;Lüftung;Wärmeverbr
 	}
 }
 
+func TestAmbiguousNumbersFollowTheirColumn(t *testing.T) {
+	for _, tc := range []struct {
+		name, csv string
+		area, u   float64
+		noted     bool
+	}{
+		{"NoEvidence", "id,floor area (m2),wall u-value,x\n1,1.234,1.234,a\n", 1234, 1.234, true},
+		{"OwnColumn", "id;floor area (m2);wall u-value\n1;1.234;0.234\n2;2.345,5;1.234\n", 1234, 0.234, false},
+		{"OwnColumnOfPoints", "id,floor area (m2),wall u-value\n1,\"1,234\",0.2\n2,120.5,0.3\n", 1234, 0.2, false},
+		{"AnotherColumn", "id\tfloor area (m2)\twindow area\n1\t1.234\t12,5\n", 1234, 0, true},
+		{"Separator", "id;floor area (m2);wall u-value\n1;1.234;1.234\n", 1234, 1.234, true},
+	} {
+		t.Run(tc.name, func(t *testing.T) {
+			t.Parallel()
+			r, k := load(t, csvFile(t, tc.csv), Options{})
+			if v, _ := k.get("1", building.FloorArea); v.Number != tc.area {
+				t.Errorf("floor area %v, want %v", v.Number, tc.area)
+			}
+			if v, _ := k.get("1", building.WallU); v.Number != tc.u {
+				t.Errorf("U-value %v, want %v", v.Number, tc.u)
+			}
+			if got := strings.Contains(checks(r, finding.Note), "ambiguous-number"); got != tc.noted {
+				t.Errorf("noted %v, want %v: %v", got, tc.noted, r.Findings)
+			}
+		})
+	}
+}
+
 func TestSurveyDateMakesRowsSurveyed(t *testing.T) {
 	r, k := load(t, csvFile(t, "id,survey date,floor area (m2),n50,metered heat (kWh)\n1,2026-05-04,100,5,9000\n2,,100,5,9000\n"), Options{Kind: building.Certified})
 	if len(k.records) != 2 {

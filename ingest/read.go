@@ -101,7 +101,9 @@ func fileDate(name, modified, changed string) string {
 			return d
 		}
 	}
-	if d, st := cell.ParseDate(modified, cell.DayFirst); st == cell.OK {
+	// Some programs leave this date in every file they write.
+	const unset = "2006-09-16"
+	if d, st := cell.ParseDate(modified, cell.DayFirst); st == cell.OK && d != unset {
 		return d
 	}
 	return changed

@@ -129,7 +129,7 @@ func (r *rowReader) row(in *sheet.Row) error {
 	ok := r.read(in, id, surveyed)
 	r.meterYear(in)
 	for _, p := range check.Row(&r.values, r.nextYear) {
-		f := finding.Finding{Severity: p.Severity, Check: p.Check, Row: in.Number, Field: fieldOf(p.Field), Building: id, Text: p.Text, Fix: p.Fix}
+		f := finding.Finding{Severity: p.Severity, Check: p.Check, Row: in.Number, Field: p.Field.Key(), Building: id, Text: p.Text, Fix: p.Fix}
 		if c := r.columnOf[p.Field]; c != nil {
 			f.Column, f.Raw = c.Letters(), in.Cell(c.Index).Text
 		}
@@ -162,7 +162,7 @@ func (r *rowReader) read(in *sheet.Row, id string, surveyed bool) bool {
 			v, st, problem := fr.value(r.thisYear, c, raw, "")
 			if problem.Text != "" {
 				f := finding.Finding{Severity: problem.Severity, Check: problem.Check, Row: in.Number, Column: c.Letters(),
-					Field: fieldOf(fr.field), Building: id, Raw: raw.Text, Text: problem.Text, Fix: problem.Fix}
+					Field: fr.field.Key(), Building: id, Raw: raw.Text, Text: problem.Text, Fix: problem.Fix}
 				switch {
 				case problem.Group != "":
 					r.found.group(problem.Group+"\x00"+c.Letters(), f)

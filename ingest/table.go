@@ -257,7 +257,7 @@ func (t *table) hasSize() bool {
 // remarks says once per sheet what holds for all its rows.
 func (t *table) remarks() {
 	remark := func(sev finding.Severity, check string, f building.Field, c *header.Column, text, fix string) {
-		x := finding.Finding{Severity: sev, Check: check, Field: fieldOf(f), Text: text, Fix: fix}
+		x := finding.Finding{Severity: sev, Check: check, Field: f.Key(), Text: text, Fix: fix}
 		if c != nil {
 			x.Column = c.Letters()
 		}

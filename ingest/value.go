@@ -52,10 +52,11 @@ func (t *table) fieldReader(f building.Field, columns []*header.Column) fieldRea
 		}
 		d := e.Decimal()
 		fr.decided = append(fr.decided, d != cell.Undecided && (e.Point == 0 || e.Comma == 0))
-		if d == cell.Undecided {
+		// Other columns tell about this one, but not that a wall has a U-value of 1234.
+		if d == cell.Undecided && !fr.small {
 			d = all.Decimal()
 		}
-		if d == cell.Undecided && t.book.Delimiter() == ';' {
+		if d == cell.Undecided && !fr.small && t.book.Delimiter() == ';' {
 			d = cell.Comma // a comma in numbers is why the separator is another
 		}
 		fr.decimal = append(fr.decimal, d)

@@ -97,6 +97,28 @@ func TestEverySynonymLeadsToItsField(t *testing.T) {
 	}
 }
 
+// Labels and keys, with the unit in brackets, are what forms of this program have.
+func TestOwnLabelsAreRecognised(t *testing.T) {
+	for i := range building.NumFields {
+		info := building.Field(i).Info()
+		headers := []string{info.Label, info.Key}
+		if info.Unit != "" {
+			headers = append(headers, info.Label+" ("+info.Unit+")", info.Label+" ["+info.Unit+"]")
+		}
+		for _, h := range headers {
+			c := Recognise(h, Evidence{})
+			if len(c) == 0 || c[0].Key != info.Key {
+				t.Errorf("%q is %v, want %s", h, c, info.Key)
+			} else if h != info.Label && h != info.Key && c[0].Unit.Base != info.Unit {
+				t.Errorf("%q has unit %q", h, c[0].Unit.Base)
+			}
+		}
+	}
+	if c := Recognise("Building id", Evidence{}); len(c) == 0 || c[0].Key != IDKey {
+		t.Errorf("building id is %v", c)
+	}
+}
+
 func grid(rows ...string) []Line {
 	var out []Line
 	for i, r := range rows {

@@ -71,6 +71,14 @@ func init() {
 		"combustible fundament surveyed residents apartments dwellings verwarming grundstuck wohnungen heating chauffage electricity kommentar") {
 		generic[cell.Fold(g)] = true
 	}
+	// What this program itself writes above a column must come back: labels and keys.
+	for i := range building.NumFields {
+		info := building.Field(i).Info()
+		rows = append(rows, []string{info.Key, "", info.Label, ""}, []string{info.Key, "", info.Key, ""})
+	}
+	for _, k := range moreKeys {
+		rows = append(rows, []string{k, "", k, ""})
+	}
 	for _, r := range rows[1:] {
 		e := entry{r[0], r[3], cell.Fold(r[2])}
 		if e.folded == "" {
