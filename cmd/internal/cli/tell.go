@@ -1,0 +1,173 @@
+package cli
+
+import (
+	"encoding/json"
+	"fmt"
+	"io"
+	"path/filepath"
+	"strings"
+	"text/tabwriter"
+	"time"
+
+	"kelvinrow/cmd/internal/pipeline"
+	"kelvinrow/estimate/state"
+	"kelvinrow/ingest/finding"
+)
+
+func today() string { return time.Now().Format("2006-01-02") }
+
+func writeJSON(w io.Writer, v any) error {
+	enc := json.NewEncoder(w)
+	enc.SetIndent("", "  ")
+	enc.SetEscapeHTML(false)
+	return enc.Encode(v)
+}
+
+// list makes an empty list of a nil one, so that JSON shows [] and not null.
+func list[T any](s []T) []T {
+	if s == nil {
+		return []T{}
+	}
+	return s
+}
+
+func join(s []string) string { return strings.Join(s, " | ") }
+
+// clip shortens text for a column of a terminal.
+func clip(s string, n int) string {
+	r := []rune(strings.Join(strings.Fields(s), " "))
+	if len(r) <= n {
+		return string(r)
+	}
+	return string(r[:n-1]) + "…"
+}
+
+// count renders a count with thin groups: 12 345.
+func count(n int) string {
+	s := fmt.Sprint(n)
+	for i := len(s) - 3; i > 0; i -= 3 {
+		s = s[:i] + " " + s[i:]
+	}
+	return s
+}
+
+// amount renders a quantity to three figures with the prefix that fits, from a
+// number in kilo-units: 12 300 kWh is 12.3 MWh.
+func amount(kilo float64, unit string) string {
+	switch {
+	case kilo >= 1e6 || kilo <= -1e6:
+		return fmt.Sprintf("%.1f G%s", kilo/1e6, unit)
+	case kilo >= 1e3 || kilo <= -1e3:
+		return fmt.Sprintf("%.1f M%s", kilo/1e3, unit)
+	}
+	return fmt.Sprintf("%.0f k%s", kilo, unit)
+}
+
+func (a *app) tellLoad(o *pipeline.LoadOutcome) {
+	if a.quiet {
+		return
+	}
+	sheets := 0
+	for _, r := range o.Reports {
+		for _, s := range r.Sheets {
+			if s.Skipped == "" {
+				sheets++
+			}
+		}
+	}
+	fmt.Fprintf(a.out, "Read         %d files, %d sheets, %s rows: %s used, %s set aside\n",
+		len(o.Reports), sheets, count(o.Rows), count(o.Used), count(o.SetAside))
+	if len(o.Already) > 0 {
+		fmt.Fprintf(a.out, "             %d files were loaded before and changed nothing\n", len(o.Already))
+	}
+	tellFindings(a.out, o.Findings, 6)
+	for _, f := range o.ToFix {
+		fmt.Fprintf(a.out, "To fix       %s\n", f)
+	}
+}
+
+// tellFindings counts the findings and shows the gravest few.
+func tellFindings(w io.Writer, fs []finding.Finding, show int) {
+	var by [3]int
+	for _, f := range fs {
+		by[f.Severity]++
+	}
+	if len(fs) == 0 {
+		return
+	}
+	fmt.Fprintf(w, "Findings     %s errors, %s warnings, %s notes\n",
+		count(by[finding.Error]), count(by[finding.Warning]), count(by[finding.Note]))
+	shown := 0
+	for _, severity := range []finding.Severity{finding.Error, finding.Warning} {
+		kinds := map[string]bool{}
+		for _, f := range fs {
+			// One example of each kind tells more than twenty of the same.
+			if f.Severity != severity || kinds[f.Check+f.File] || shown == show {
+				continue
+			}
+			kinds[f.Check+f.File] = true
+			fmt.Fprintf(w, "  %s\n", f)
+			shown++
+		}
+	}
+	if rest := by[finding.Error] + by[finding.Warning] - shown; rest > 0 {
+		fmt.Fprintf(w, "  and %s more\n", count(rest))
+	}
+}
+
+func (a *app) tellRank(o *pipeline.RankOutcome) {
+	if a.quiet {
+		return
+	}
+	s := &o.Summary
+	fmt.Fprintf(a.out, "Buildings    %s estimated in climate %s", count(s.Buildings-s.Failed), o.Run.Climate)
+	if s.Failed > 0 {
+		fmt.Fprintf(a.out, ", %s could not be (see Data issues)", count(s.Failed))
+	}
+	fmt.Fprintln(a.out)
+	fmt.Fprintf(a.out, "Heat         need %sh/a (%.0f kWh/m2), delivered %sh/a, %s CO2/a\n",
+		amount(s.NeedKWh, "W"), s.NeedKWh/s.FloorAreaM2, amount(s.DeliveredKWh, "W"), tonnes(s.CO2Kg))
+	var total float64
+	for _, q := range s.LossByPathKWh {
+		total += q
+	}
+	var parts []string
+	for p, q := range s.LossByPathKWh {
+		parts = append(parts, fmt.Sprintf("%s %.0f %%", state.Path(p), 100*q/total))
+	}
+	fmt.Fprintf(a.out, "Loss by path %s\n\n", strings.Join(parts, ", "))
+
+	w := tabwriter.NewWriter(a.out, 0, 4, 2, ' ', 0)
+	fmt.Fprintln(w, "Measure\tbuildings\tsaves\tcosts\tbest building\tsaves there")
+	for i, m := range s.Measures {
+		best := "-\t"
+		if m.Best >= 0 {
+			b := &o.Buildings[m.Best]
+			best = fmt.Sprintf("%s %s\t%s/a", b.ID, clip(b.Name, 24), amount(b.Measures[i].SavingKWh, "Wh"))
+		}
+		fmt.Fprintf(w, "%s\t%s\t%s/a\t%s\t%s\n", o.Basis.Measures[i].Terms.Label, count(m.Applies),
+			amount(m.SavingKWh, "Wh"), money(m.Cost, o.Basis.Set.Economics.Currency), best)
+	}
+	w.Flush()
+	path := o.Out
+	if abs, err := filepath.Abs(path); err == nil {
+		path = abs
+	}
+	fmt.Fprintf(a.out, "\nSavings of different measures on one building do not add up. The numbers are a\nscreening: cautions stand beside them in the workbook; local codes and licensed\npractice decide.\n")
+	fmt.Fprintf(a.out, "Run %d        %s\n", o.Run.Number, path)
+}
+
+func tonnes(kg float64) string { return fmt.Sprintf("%s t", count(int(kg/1000+0.5))) }
+
+func money(v float64, currency string) string {
+	return fmt.Sprintf("%.1f M %s", v/1e6, currency)
+}
+
+func (a *app) tellTimes(t pipeline.Timings) {
+	if a.quiet {
+		return
+	}
+	sec := func(d time.Duration) string { return fmt.Sprintf("%.1f", d.Seconds()) }
+	fmt.Fprintf(a.out, "Seconds      start %s, read and store %s, estimate %s, rank %s, store run %s, write %s\n",
+		sec(t.Start), sec(t.Read), sec(t.Estimate), sec(t.Rank), sec(t.Save), sec(t.Write))
+}

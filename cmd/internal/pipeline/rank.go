@@ -1,0 +1,200 @@
+package pipeline
+
+import (
+	"context"
+	"crypto/sha256"
+	"encoding/hex"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+	"time"
+
+	"kelvinrow/estimate"
+	"kelvinrow/estimate/building"
+	"kelvinrow/estimate/result"
+	"kelvinrow/ingest/finding"
+	"kelvinrow/rank"
+	"kelvinrow/rank/workbook"
+)
+
+// RankOptions says how to rank and where the workbook goes.
+type RankOptions struct {
+	Out       string
+	Yardstick rank.Yardstick
+	Top       int // rows per measure sheet; 0 is all
+	Title     string
+}
+
+// RankOutcome is a finished run.
+type RankOutcome struct {
+	Run       *result.Run
+	Buildings []result.Building
+	Summary   rank.Summary
+	Basis     *estimate.Basis
+	Out       string
+}
+
+// Rank estimates all buildings of the portfolio, ranks them, stores the run and
+// writes the workbook. The run is stored only when the workbook is whole, and
+// the workbook takes its place only when the run is stored. Findings are those
+// of the command itself; what earlier loads found comes from the store.
+func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.Finding) (*RankOutcome, error) {
+	basis, err := s.basis()
+	if err != nil {
+		return nil, err
+	}
+	run := &result.Run{
+		Portfolio:   s.Portfolio,
+		Time:        time.Now().UTC().Truncate(time.Second),
+		Version:     estimate.Version,
+		Climate:     basis.Climate.Name,
+		Assumptions: basis.Hash(),
+		Yardstick:   string(opt.Yardstick),
+		Measures:    basis.Keys(),
+	}
+	if run.Files, err = s.fileNames(ctx); err != nil {
+		return nil, err
+	}
+	buildings, inputs, err := s.estimate(ctx, basis)
+	if err != nil {
+		return nil, err
+	}
+	run.Inputs = inputs
+	if len(buildings) == 0 {
+		return nil, fmt.Errorf("portfolio %q has no buildings: load some first (kelvinrow load FILE...)", s.Portfolio)
+	}
+	run.Buildings = len(buildings)
+	for i := range buildings {
+		if buildings[i].Failed != "" {
+			run.Failed++
+		}
+	}
+
+	began := time.Now()
+	summary := rank.Summarise(run, buildings)
+	s.Timings.Rank = time.Since(began)
+
+	stored, err := s.Store.Findings(ctx, s.Portfolio)
+	if err != nil {
+		return nil, err
+	}
+
+	began = time.Now()
+	s.Progress.Stage("storing the run", 0)
+	if err := s.Store.SaveRun(ctx, run, buildings); err != nil {
+		return nil, fmt.Errorf("store the run: %w", err)
+	}
+	s.Timings.Save = time.Since(began)
+
+	began = time.Now()
+	s.Progress.Stage("writing "+filepath.Base(opt.Out), 0)
+	in := &workbook.Input{
+		Run: run, Buildings: buildings, Findings: union(stored, findings), Set: basis.Set,
+		Climate: basis.Climate, Top: opt.Top, Yardstick: opt.Yardstick, Title: opt.Title,
+	}
+	err = WriteWhole(opt.Out, func(w io.Writer) error { return workbook.Write(ctx, w, in) })
+	if err != nil {
+		return nil, fmt.Errorf("run %d is stored, but its workbook is not written: %w", run.Number, err)
+	}
+	s.Timings.Write = time.Since(began)
+	s.Progress.Done()
+	return &RankOutcome{Run: run, Buildings: buildings, Summary: summary, Basis: basis, Out: opt.Out}, nil
+}
+
+// estimate evaluates all buildings, and hashes what they are made from.
+func (s *Session) estimate(ctx context.Context, basis *estimate.Basis) (buildings []result.Building, inputs string, err error) {
+	began := time.Now()
+	n, err := s.Store.Count(ctx, s.Portfolio)
+	if err != nil {
+		return nil, "", err
+	}
+	s.Progress.Stage("estimating", n)
+	h := sha256.New()
+	source := func(yield func(*building.Building) error) error {
+		return s.Store.Buildings(ctx, s.Portfolio, func(b *building.Building) error {
+			b.WriteHash(h)
+			return yield(b)
+		})
+	}
+	buildings, err = basis.Estimate(ctx, s.Workers, source, s.Progress.Add)
+	if err != nil {
+		return nil, "", fmt.Errorf("estimate: %w", err)
+	}
+	s.Timings.Estimate = time.Since(began)
+	return buildings, hex.EncodeToString(h.Sum(nil)), nil
+}
+
+func (s *Session) fileNames(ctx context.Context) ([]string, error) {
+	sources, err := s.Store.Sources(ctx, s.Portfolio)
+	if err != nil {
+		return nil, err
+	}
+	names := make([]string, len(sources))
+	for i := range sources {
+		names[i] = sources[i].File
+	}
+	return names, nil
+}
+
+// union adds the findings of this command that the store does not have: those
+// of files that could not be read at all.
+func union(stored, own []finding.Finding) []finding.Finding {
+	have := make(map[finding.Finding]bool, len(stored))
+	for _, f := range stored {
+		have[f] = true
+	}
+	for _, f := range own {
+		if !have[f] {
+			stored = append(stored, f)
+		}
+	}
+	finding.Sort(stored)
+	return stored
+}
+
+// WriteWhole writes a file so that it is there whole or not at all.
+func WriteWhole(path string, write func(io.Writer) error) error {
+	f, err := os.CreateTemp(filepath.Dir(path), ".kelvinrow-*")
+	if err != nil {
+		return err
+	}
+	defer os.Remove(f.Name())
+	if err := write(f); err != nil {
+		f.Close()
+		return err
+	}
+	if err := f.Chmod(0o644); err != nil {
+		f.Close()
+		return err
+	}
+	if err := f.Close(); err != nil {
+		return err
+	}
+	return os.Rename(f.Name(), path)
+}
+
+// Explain says everything about one building.
+func (s *Session) Explain(ctx context.Context, id string) (*estimate.Explanation, error) {
+	basis, err := s.basis()
+	if err != nil {
+		return nil, err
+	}
+	b, _, err := s.Store.Building(ctx, s.Portfolio, id)
+	if err != nil {
+		return nil, err
+	}
+	e, err := basis.Explain(b)
+	if err != nil {
+		return nil, fmt.Errorf("explain %s: %w", id, err)
+	}
+	e.Portfolio = s.Portfolio
+	runs, err := s.Store.Runs(ctx, s.Portfolio)
+	if err != nil {
+		return nil, err
+	}
+	if len(runs) > 0 {
+		e.Run = runs[len(runs)-1].Number
+	}
+	return e, nil
+}
