@@ -74,41 +74,37 @@ func Best(b *result.Building, y Yardstick) int {
 type Lead struct {
 	Index   int   // into the buildings
 	Measure int   // the measure that does most there
-	Among   []int // measures whose first n rows hold the building
+	Among   []int // measures whose first rows hold the building
 }
 
-// Leading returns the n buildings where a single measure does most, best first;
-// ties go by building id. lists holds the ranking of every measure. Savings of
-// different measures on one building do not add up, so they are not added.
+// Leading returns the n buildings that stand among the first n for most
+// measures; of equals first the one where a single measure does most, then by
+// building id. lists holds the ranking of every measure. Savings of different
+// measures on one building do not add up, so they are not added.
 func Leading(buildings []result.Building, lists [][]Row, y Yardstick, n int) []Lead {
-	type entry struct {
-		key            float64
-		index, measure int
+	among := map[int][]int{}
+	var indexes []int
+	for m, list := range lists {
+		for _, row := range list[:min(n, len(list))] {
+			if among[row.Index] == nil {
+				indexes = append(indexes, row.Index)
+			}
+			among[row.Index] = append(among[row.Index], m)
+		}
 	}
 	by := y.find()
-	var entries []entry
-	for i := range buildings {
-		if m := Best(&buildings[i], y); m >= 0 {
-			entries = append(entries, entry{by.rounded(&buildings[i].Measures[m]), i, m})
-		}
+	key := func(l *Lead) float64 { return by.rounded(&buildings[l.Index].Measures[l.Measure]) }
+	leads := make([]Lead, len(indexes))
+	for i, index := range indexes {
+		leads[i] = Lead{Index: index, Measure: Best(&buildings[index], y), Among: among[index]}
 	}
-	slices.SortFunc(entries, func(a, b entry) int {
+	slices.SortFunc(leads, func(a, b Lead) int {
 		return cmp.Or(
-			cmp.Compare(b.key, a.key),
-			strings.Compare(buildings[a.index].ID, buildings[b.index].ID),
-			cmp.Compare(a.index, b.index),
+			cmp.Compare(len(b.Among), len(a.Among)),
+			cmp.Compare(key(&b), key(&a)),
+			strings.Compare(buildings[a.Index].ID, buildings[b.Index].ID),
+			cmp.Compare(a.Index, b.Index),
 		)
 	})
-	leads := make([]Lead, min(n, len(entries)))
-	for i := range leads {
-		leads[i] = Lead{Index: entries[i].index, Measure: entries[i].measure}
-		for m, list := range lists {
-			for _, row := range list[:min(n, len(list))] {
-				if row.Index == leads[i].Index {
-					leads[i].Among = append(leads[i].Among, m)
-				}
-			}
-		}
-	}
-	return leads
+	return leads[:min(n, len(leads))]
 }

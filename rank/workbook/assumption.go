@@ -16,8 +16,9 @@ const assumptionsSheet = "Assumptions"
 // sources.
 const (
 	assumptionNumbers = 9
+	assumptionWidth   = 12.5
 	sourceColumn      = assumptionNumbers + 2
-	sourceWidth       = 80
+	sourceWidth       = 50
 )
 
 // sheetBuilder writes a small sheet from top to bottom.
@@ -46,35 +47,48 @@ func (s *sheetBuilder) heading(text string, columns int) {
 	}
 }
 
-// heads writes the header of a block; the first cell and the last are text, the
-// others stand above numbers.
-func (s *sheetBuilder) heads(width float64, heads ...string) {
+// heads writes the header of a block. The first head is text; those before free
+// stand above numbers; those from free on are text again, and the last of all
+// goes on to the last column.
+func (s *sheetBuilder) heads(free int, heads ...string) {
 	cells := make([]wrappedText, len(heads))
 	for i, h := range heads {
-		cells[i] = wrappedText{h, width}
+		if i+1 < free {
+			cells[i] = wrappedText{h, assumptionWidth - 2}
+		}
 	}
-	s.next(heightOf(9, cells...) + 2)
+	s.next(heightOf(9, cells...) + 4)
 	for c := 1; c <= sourceColumn; c++ {
 		style := s.b.st.head()
-		if c > 1 && c < sourceColumn {
+		if c > 1 && c < free {
 			style = s.b.st.headRight()
 		}
-		switch {
-		case c < len(heads):
+		if c <= len(heads) {
 			s.r.text(c, style, heads[c-1])
-		case c == sourceColumn:
-			s.r.text(c, style, heads[len(heads)-1])
-		default:
+		} else {
 			s.r.blank(c, style)
 		}
 	}
 }
 
-func (s *sheetBuilder) source(from int, text string) {
-	for c := from; c < sourceColumn; c++ {
-		s.r.blank(c, s.b.st.words())
+// note writes text from a column on, over all columns to the last.
+func (s *sheetBuilder) note(from int, text string) {
+	s.merged(from, sourceColumn, text)
+}
+
+func (s *sheetBuilder) merged(from, to int, text string) {
+	s.r.text(from, s.b.st.wrapped(), text)
+	for c := from + 1; c <= to; c++ {
+		s.r.blank(c, s.b.st.wrapped())
 	}
-	s.r.text(sourceColumn, s.b.st.wrapped(), text)
+	if s.err == nil && to > from {
+		s.err = s.b.f.MergeCell(s.pg.name, cellName(from, s.row), cellName(to, s.row))
+	}
+}
+
+// noteWidth is the width of a note from a column on.
+func noteWidth(from int) float64 {
+	return sourceWidth + assumptionWidth*float64(sourceColumn-from)
 }
 
 // input writes a cell that formulas use and gives it its name.
@@ -93,14 +107,14 @@ func (b *book) addAssumptions() error {
 	s := &sheetBuilder{b: b, pg: pg, r: b.write(pg)}
 	s.next(30)
 	s.r.text(1, b.st.id(look{size: 16, bold: true, color: accent}), "Assumptions")
-	s.r.text(3, b.st.backLink(), backText)
-	if err := b.link(pg, "C1", overviewTarget); err != nil {
-		return err
-	}
 	s.next(18)
 	s.r.text(1, b.st.input(""), "cells that look like this")
 	s.r.text(2, b.st.subtitle(), "may be changed here: cost, money saved, payback and net present value follow on all sheets. Ranks do not: they are values of this run.")
-	s.next(15)
+	s.next(ordinaryHeight)
+	s.r.text(1, b.st.backLink(), backText)
+	if err := b.link(pg, cellName(1, s.row), overviewTarget); err != nil {
+		return err
+	}
 	s.r.text(2, b.st.subtitle(), "Everything else on this sheet is a record of what the energy was computed with. To change it, give an assumptions file to a new run.")
 
 	b.economics(s)
@@ -117,7 +131,7 @@ func (b *book) addAssumptions() error {
 	}
 	widths := []float64{36}
 	for range assumptionNumbers {
-		widths = append(widths, 12.5)
+		widths = append(widths, assumptionWidth)
 	}
 	if err := b.widths(pg, append(widths, sourceWidth)...); err != nil {
 		return err
@@ -125,45 +139,38 @@ func (b *book) addAssumptions() error {
 	if err := b.freeze(pg, 1, 3); err != nil {
 		return err
 	}
-	return b.setPrint(pg, layout{paper: paperA3, titleRows: "1:3"})
+	return b.setPrint(pg, layout{titleRows: "1:3"})
 }
 
 func (b *book) economics(s *sheetBuilder) {
 	e := &b.in.Set.Economics
 	s.heading("What money is counted with", sourceColumn)
-	s.heads(11, "Quantity", "Value", "Source")
-	s.next(0)
+	s.heads(3, "Quantity", "Value", "Source")
+	s.next(ordinaryHeight)
 	s.r.text(1, b.st.words(), "Real interest rate (per year)")
 	s.input(2, "0.00 %", e.DiscountRate, discountName)
-	s.source(3, e.Source)
-	s.next(0)
+	s.note(3, e.Source)
+	s.next(ordinaryHeight)
 	s.r.text(1, b.st.words(), "Currency")
 	s.r.text(2, b.st.value(""), e.Currency)
-	s.source(3, "")
-	s.next(0)
+	s.note(3, "")
+	s.next(ordinaryHeight)
 	s.r.text(1, b.st.words(), "Calculation period (years)")
 	s.r.number(2, b.st.value(plain), e.PeriodYears, 2)
-	s.source(3, "for the record: net present value counts each measure over its own life")
+	s.note(3, "for the record: net present value counts each measure over its own life")
 }
 
 func (b *book) carriers(s *sheetBuilder) {
 	s.heading("Energy carriers", sourceColumn)
-	s.heads(11, "Energy carrier", "Price ("+b.currency()+"/kWh)", "Real price rise (per year)", "CO₂ (kg/kWh)", "Source")
+	s.heads(5, "Energy carrier", "Price ("+b.currency()+"/kWh)", "Real price rise (per year)", "CO₂ (kg/kWh)", "Source")
 	for _, c := range b.terms.carriers {
-		s.next(sourceHeight(c.Source))
+		s.next(heightOf(9, wrappedText{c.Source, noteWidth(5)}))
 		s.r.text(1, b.st.words(), capital(c.Word))
 		s.input(2, four, c.PricePerKWh, c.price)
 		s.input(3, "0.00 %", c.PriceRise, c.rise)
 		s.r.number(4, b.st.value(three), c.CO2KgKWh, 6)
-		s.source(5, c.Source)
+		s.note(5, c.Source)
 	}
-}
-
-func sourceHeight(source string) float64 {
-	if runeLen(source) <= sourceWidth {
-		return 0
-	}
-	return heightOf(9, wrappedText{source, sourceWidth})
 }
 
 // allMeasures are the measures of the run and, where it is not among them, the
@@ -176,24 +183,21 @@ func (b *book) allMeasures() []*measureTerms {
 }
 
 func (b *book) measureTable(s *sheetBuilder) {
-	const from, to = 7, assumptionNumbers + 1 // of how far it goes
+	const from, to = 7, sourceColumn - 2 // of how far it goes
 	s.heading("Retrofit measures: what they cost and how far they go", sourceColumn)
-	s.heads(11, "Measure", "Counted in", "Fixed cost per building ("+b.currency()+")", "Cost per unit ("+b.currency()+")",
-		"Life (years)", "Upkeep (share of cost per year)", "How far it goes", "Source")
+	s.heads(from, "Measure", "Counted in", "Fixed cost per building ("+b.currency()+")", "Cost per unit ("+b.currency()+")",
+		"Life (years)", "Upkeep (share of cost per year)", "How far it goes", "", "", "Source")
 	for _, m := range b.allMeasures() {
 		far := describeTargets(m.Target)
-		s.next(max(15, heightOf(9, wrappedText{m.Source, sourceWidth}, wrappedText{far, 12.5 * (to - from + 1)})))
+		s.next(heightOf(9, wrappedText{m.Source, noteWidth(to + 1)}, wrappedText{far, assumptionWidth * (to - from + 1)}))
 		s.r.text(1, b.st.words(), m.Label)
 		s.r.text(2, b.st.value(""), unitWords(m.Unit))
 		s.input(3, whole, m.FixedCost, m.fixed)
 		s.input(4, two, m.UnitCost, m.unit)
 		s.input(5, plain, m.LifeYears, m.life)
 		s.input(6, "0.0 %", m.UpkeepShare, m.upkeep)
-		s.r.text(from, b.st.wrapped(), far)
-		s.source(from+1, m.Source)
-		if s.err == nil {
-			s.err = b.f.MergeCell(s.pg.name, cellName(from, s.row), cellName(to, s.row))
-		}
+		s.merged(from, to, far)
+		s.note(to+1, m.Source)
 	}
 }
 
@@ -247,25 +251,21 @@ func describeTargets(target map[string]float64) string {
 // presentValues makes the factors that keep the formulas of net present value
 // short.
 func (b *book) presentValues(s *sheetBuilder) {
-	s.heading("Present value of 1 a year over the life of a measure (by formula from interest, price rise and life)", sourceColumn)
-	// A sheet has room for as many carriers; more of them still have their names.
+	s.heading("Present value of 1 a year over the life of a measure", sourceColumn)
+	s.next(ordinaryHeight)
+	s.r.text(1, b.st.subtitle(), "By formula: the sum over the years t of its life of ((1 + price rise)/(1 + interest rate))^t. The formulas of net present value use these.")
 	heads := []string{"Measure", "Constant, for upkeep"}
 	for _, c := range b.terms.carriers {
 		heads = append(heads, capital(c.Word))
 	}
-	s.heads(11, append(heads, "Equation")...)
-	for i, m := range b.allMeasures() {
-		s.next(0)
+	s.heads(len(heads)+1, heads...)
+	for _, m := range b.allMeasures() {
+		s.next(ordinaryHeight)
 		s.r.text(1, b.st.words(), m.Label)
 		s.factor(2, m.levelName, presentValueFormula("", m.life), m.level)
 		for k, c := range b.terms.carriers {
 			s.factor(3+k, m.pvName[c.Word], presentValueFormula(c.rise, m.life), m.pv[c.Word])
 		}
-		about := ""
-		if i == 0 {
-			about = "sum over the years t of life of ((1 + rise)/(1 + rate))^t"
-		}
-		s.source(3+len(b.terms.carriers), about)
 	}
 }
 
@@ -278,11 +278,11 @@ func (s *sheetBuilder) factor(col int, name, formula string, v float64) {
 
 func (b *book) uses(s *sheetBuilder) {
 	s.heading("Conditions of use", sourceColumn)
-	s.heads(11, "Use", "Indoor temperature (°C)", "Internal gains (W/m²)", "Hours at set-point (share)",
+	s.heads(9, "Use", "Indoor temperature (°C)", "Internal gains (W/m²)", "Hours at set-point (share)",
 		"Least outdoor air (l/s per m²)", "and per person (l/s)", "Floor area per person (m²)", "Hot water (kWh/(m² a))", "Source")
 	for i := range b.in.Set.Uses {
 		u := &b.in.Set.Uses[i]
-		s.next(sourceHeight(u.Source))
+		s.next(heightOf(9, wrappedText{u.Source, noteWidth(9)}))
 		s.r.text(1, b.st.words(), capital(u.Word))
 		for c, v := range []struct {
 			x      float64
@@ -293,7 +293,7 @@ func (b *book) uses(s *sheetBuilder) {
 		} {
 			s.r.number(2+c, b.st.value(v.format), v.x, 4)
 		}
-		s.source(9, u.Source)
+		s.note(9, u.Source)
 	}
 }
 
@@ -303,7 +303,7 @@ var monthNames = [12]string{"January", "February", "March", "April", "May", "Jun
 func (b *book) climate(s *sheetBuilder) {
 	c := b.in.Climate
 	s.heading("Climate: "+c.Name, sourceColumn)
-	s.heads(11, "Quantity", "Value", "Source")
+	s.heads(3, "Quantity", "Value", "Source")
 	for i, x := range []struct {
 		label, format string
 		v             float64
@@ -312,28 +312,28 @@ func (b *book) climate(s *sheetBuilder) {
 		{"Altitude (m)", whole, c.AltitudeM},
 		{"Design outdoor temperature (°C)", one, c.DesignOutdoorC},
 	} {
-		s.next(0)
+		s.next(ordinaryHeight)
 		s.r.text(1, b.st.words(), x.label)
 		s.r.number(2, b.st.value(x.format), x.v, 4)
 		source := ""
 		if i == 0 {
 			source = c.Source
 		}
-		s.source(3, source)
+		s.note(3, source)
 	}
-	s.next(0)
+	s.next(ordinaryHeight)
 	s.r.text(1, b.st.words(), "Terrain around the buildings")
 	s.r.text(2, b.st.value(""), c.Terrain.String())
-	s.source(3, "")
+	s.note(3, "")
 	s.skip()
 	heads := []string{"Month", "Hours", "Outdoor temperature (°C)", "Wind at 10 m (m/s)", "Sun on the horizontal (kWh/m²)"}
 	for o := range climate.NumOrientations {
 		heads = append(heads, "Sun on "+climate.Orientation(o).String()+" facades (kWh/m²)")
 	}
-	s.heads(11, append(heads, "")...)
+	s.heads(len(heads)+1, heads...)
 	for i := range c.Months {
 		m := &c.Months[i]
-		s.next(0)
+		s.next(ordinaryHeight)
 		s.r.text(1, b.st.words(), monthNames[i])
 		s.r.number(2, b.st.value(whole), m.Hours, 2)
 		s.r.number(3, b.st.value(one), m.OutdoorC, 4)
@@ -342,6 +342,5 @@ func (b *book) climate(s *sheetBuilder) {
 		for o, v := range m.VerticalKWhM2 {
 			s.r.number(6+o, b.st.value(one), v, 4)
 		}
-		s.source(6+climate.NumOrientations, "")
 	}
 }

@@ -17,6 +17,28 @@ var kindMeanings = [building.NumKinds]string{
 	building.Surveyed:   "measured or seen on site",
 }
 
+// supply shows what the buildings run on.
+func (b *book) supply(o *opening) error {
+	o.breaks = append(o.breaks, o.row+1)
+	t := &b.summary.Totals
+	o.title("What the buildings run on")
+	o.next(30)
+	o.across(1, 2, b.st.head(), "Delivered today")
+	for i, h := range []string{"MWh/a", "Share", "Thousand " + b.currency() + "/a"} {
+		o.r.text(3+i, b.st.headRight(), h)
+	}
+	delivered := t.DeliveredKWh + t.FansKWh
+	for i, word := range b.summary.Carriers {
+		c := b.terms.byWord[word]
+		o.next(ordinaryHeight)
+		o.across(1, 2, b.st.words(), capital(word))
+		o.r.number(3, b.st.value(whole), t.CarrierKWh[i]/1000, 3)
+		o.r.number(4, b.st.value(percent), ratio(t.CarrierKWh[i], delivered), 6)
+		o.r.formula(5, b.st.value(whole), "C#*"+c.price, float64(fixed(t.CarrierKWh[i]/1000, 3)*c.PricePerKWh))
+	}
+	return nil
+}
+
 // firmness shows what the numbers rest on and what was wrong in the data.
 func (b *book) firmness(o *opening) error {
 	o.title("How firm the numbers are")
@@ -39,7 +61,7 @@ func (b *book) firmness(o *opening) error {
 	}
 	for i := range building.NumKinds {
 		k := building.NumKinds - 1 - i
-		o.next(0)
+		o.next(ordinaryHeight)
 		o.across(1, 2, b.st.words(), kindLabels[k])
 		o.r.number(3, b.st.value(percent), b.summary.InputShare[k], 6)
 		o.across(4, 8, b.st.words(), kindMeanings[k])
@@ -54,6 +76,7 @@ func (b *book) firmness(o *opening) error {
 
 // cautions says in plain words what must not be forgotten.
 func (b *book) cautions(o *opening) error {
+	o.breaks = append(o.breaks, o.row+1)
 	o.title("Cautions")
 	o.sentence("This is a screening: it says which buildings to look at first, not what to build. Acting on it can hurt people and buildings where these are forgotten. Local codes and licensed practice decide.")
 	o.next(20)
@@ -61,7 +84,7 @@ func (b *book) cautions(o *opening) error {
 	o.r.text(4, b.st.headRight(), "Buildings")
 	o.across(5, gridColumns, b.st.head(), "In plain words")
 	bold := b.st.id(look{bold: true, wrap: true, valign: "top", edge: line, size: 9})
-	number := b.st.id(look{format: whole, align: "right", valign: "top", edge: line})
+	number := b.st.id(look{format: padded(whole), align: "right", valign: "top", edge: line, size: 9})
 	prose := b.st.id(look{wrap: true, valign: "top", edge: line, size: 9})
 	concerned := b.concerned()
 	for i, c := range caution.All() {
@@ -104,8 +127,9 @@ func (b *book) concerned() []int {
 // contents lists the sheets with links.
 func (b *book) contents(o *opening) error {
 	o.title("Contents")
+	o.contents = o.row
 	for _, pg := range b.pages[1:] {
-		o.next(0)
+		o.next(ordinaryHeight)
 		o.across(1, 3, b.st.textLink(), pg.name)
 		o.linkTo(1, quoteSheet(pg.name)+"!A1")
 		o.across(4, gridColumns, b.st.words(), pg.about)

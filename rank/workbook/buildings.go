@@ -30,7 +30,7 @@ var pathLabels = [state.NumPaths]string{
 
 var kindLabels = [building.NumKinds]string{"Default", "Registered", "Certified", "Metered", "Surveyed"}
 
-const cautionWidth = 62
+const cautionWidth = 58
 
 func (b *book) addBuildings() error {
 	b.buildings = b.plan([]string{"Buildings"}, len(b.in.Buildings))
@@ -44,11 +44,11 @@ func (b *book) addBuildings() error {
 		about: "Every building: what is known, what it loses, what it uses",
 		tab:   muted, title: "Buildings",
 		notes: []string{
-			fmt.Sprintf("%s buildings, %s could not be estimated. Energy is calculated for the building as it is, in climate %s. U-values are area-weighted.",
-				count(b.summary.Buildings), count(b.summary.Failed), b.in.Climate.Name),
+			fmt.Sprintf("%s, %s could not be estimated. Energy is calculated for the building as it is, in climate %s. U-values are area-weighted.",
+				buildings(b.summary.Buildings), count(b.summary.Failed), b.in.Climate.Name),
 			"Energy cost follows by formula from the prices on the sheet Assumptions. Links lead to the row a building had when this workbook was written.",
 		},
-		frozen: 3, wide: 2, rows: len(b.in.Buildings), table: "buildings",
+		frozen: 2, wide: 4, rows: len(b.in.Buildings), table: "buildings",
 		columns: b.buildingColumns(),
 	}
 	cost := b.buildingCost(l)
@@ -60,7 +60,7 @@ func (b *book) addBuildings() error {
 			x.cost = cost(bl)
 		}
 	}
-	l.height = func(x *buildingRow) float64 { return rowHeight(x.cautions + x.Failed) }
+	l.height = func(x *buildingRow) float64 { return rowHeight(wrappedText{x.cautions + x.Failed, cautionWidth}) }
 	bestColumn := 0
 	for i := range l.columns {
 		if l.columns[i].key == "best" {
@@ -77,14 +77,6 @@ func (b *book) addBuildings() error {
 		}
 	}
 	return addList(b, &b.buildings, l)
-}
-
-// rowHeight is the height of a row by its cautions, 0 for one line.
-func rowHeight(cautions string) float64 {
-	if runeLen(cautions) <= cautionWidth {
-		return 0
-	}
-	return heightOf(9, wrappedText{cautions, cautionWidth})
 }
 
 func (b *book) buildingColumns() []column[buildingRow] {
@@ -134,15 +126,7 @@ func (b *book) buildingColumns() []column[buildingRow] {
 	text(air, "Ventilation", 22, func(x *buildingRow) string { return x.Ventilation })
 	number("", air, "Airtightness n50 (1/h)", 12, one, 3, func(x *buildingRow) float64 { return x.N50PerH })
 	number("", air, "Outdoor air, yearly mean (1/h)", 12, two, 4, func(x *buildingRow) float64 { return x.AirChangesPerH })
-	text(air, "Outdoor air", 11, func(x *buildingRow) string {
-		switch {
-		case !x.ok():
-			return ""
-		case x.UnderVentilated:
-			return "too little"
-		}
-		return "enough"
-	})
+	cols = append(cols, airColumn(b, air, "Outdoor air", func(x *buildingRow) (known, tooLittle bool) { return x.ok(), x.UnderVentilated }))
 	text(system, "Heating", 17, func(x *buildingRow) string { return x.Heating })
 	text(system, "Energy carrier", 13, func(x *buildingRow) string { return x.Carrier })
 	number("", flows, "Transmission (W/K)", 13, whole, 2, func(x *buildingRow) float64 { return x.TransmissionWK })
@@ -161,7 +145,7 @@ func (b *book) buildingColumns() []column[buildingRow] {
 		style: b.st.value(whole), right: true})
 	number("", use, "Metered heat (kWh/a)", 12, whole, 1, func(x *buildingRow) float64 { return known(x.MeteredKWh) })
 	for k := building.NumKinds - 1; k >= 0; k-- {
-		number("", firm, kindLabels[k]+" (share)", 11, percent, 6, func(x *buildingRow) float64 { return x.InputShare[k] })
+		number("", firm, kindLabels[k]+" (share)", 12, percent, 6, func(x *buildingRow) float64 { return x.InputShare[k] })
 	}
 	cols = append(cols,
 		column[buildingRow]{key: "best", band: next, head: "Measure that does most", width: 28, style: b.st.textLink(),
@@ -214,6 +198,32 @@ func (b *book) buildingCost(l *list[buildingRow]) func(*result.Building) float64
 		return float64(fixed(bl.DeliveredKWh, energyDecimals)*b.terms.byWord[bl.Carrier].PricePerKWh) +
 			float64(fixed(bl.FansKWh, energyDecimals)*power.PricePerKWh)
 	}
+}
+
+// airColumn says whether outdoor air is enough.
+func airColumn[T any](b *book, band, head string, get func(*T) (known, tooLittle bool)) column[T] {
+	alarm := b.st.alarm()
+	return column[T]{band: band, head: head, width: 11, style: b.st.text(), put: func(r *rows, col, style int, x *T) {
+		switch known, tooLittle := get(x); {
+		case !known:
+			r.blank(col, style)
+		case tooLittle:
+			r.text(col, alarm, "too little")
+		default:
+			r.text(col, style, "enough")
+		}
+	}}
+}
+
+// buildings renders a count of buildings.
+func buildings(n int) string { return counted(n, "building") }
+
+// counted renders a count of things.
+func counted(n int, thing string) string {
+	if n == 1 {
+		return "1 " + thing
+	}
+	return count(n) + " " + thing + "s"
 }
 
 // count renders a count with thin spaces between thousands.

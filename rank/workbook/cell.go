@@ -6,7 +6,6 @@ import (
 	"math"
 	"strconv"
 	"strings"
-	"unicode/utf8"
 )
 
 // maxRows is the number of rows a sheet can hold.
@@ -243,5 +242,3 @@ func appendFixed(b []byte, v float64, decimals int) []byte {
 	}
 	return b
 }
-
-func runeLen(s string) int { return utf8.RuneCountInString(s) }

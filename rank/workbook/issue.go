@@ -1,7 +1,6 @@
 package workbook
 
 import (
-	"fmt"
 	"math"
 	"slices"
 
@@ -23,15 +22,15 @@ func (b *book) addIssues() error {
 	s := b.planFixed(issuesSheet, len(findings))
 	by := b.bySeverity()
 	l := &list[finding.Finding]{
-		about: fmt.Sprintf("What was wrong or doubtful in the data: %s errors, %s warnings, %s notes",
-			count(by[finding.Error]), count(by[finding.Warning]), count(by[finding.Note])),
+		about: "What was wrong or doubtful in the data: " + counted(by[finding.Error], "error") + ", " +
+			counted(by[finding.Warning], "warning") + ", " + counted(by[finding.Note], "note"),
 		tab: ochre, title: "Data issues",
 		notes: []string{
-			fmt.Sprintf("%s errors (row, sheet or file set aside), %s warnings (value set aside, the rest of the row used), %s notes.",
-				count(by[finding.Error]), count(by[finding.Warning]), count(by[finding.Note])),
+			counted(by[finding.Error], "error") + " (row, sheet or file set aside), " +
+				counted(by[finding.Warning], "warning") + " (value set aside, the rest of the row used), " + counted(by[finding.Note], "note") + ".",
 			"Rows set aside also stand in a workbook named after their source with -to-fix at the end: mend them there and load that file.",
 		},
-		frozen: 1, rows: len(findings), table: "issues",
+		frozen: 1, wide: 2, rows: len(findings), table: "issues",
 	}
 	text := func(band, head string, width float64, get func(*finding.Finding) string) {
 		l.columns = append(l.columns, textColumn(b, band, head, width, get))
@@ -59,10 +58,7 @@ func (b *book) addIssues() error {
 
 	l.load = func(i int, x *finding.Finding) { *x = findings[i] }
 	l.height = func(f *finding.Finding) float64 {
-		if runeLen(f.Text) <= 70 && runeLen(f.Fix) <= 50 {
-			return 0
-		}
-		return heightOf(9, wrappedText{f.Text, 70}, wrappedText{f.Fix, 50})
+		return rowHeight(wrappedText{f.Text, 70}, wrappedText{f.Fix, 50})
 	}
 	l.links = func(k *links, i, row int) {
 		if at, ok := b.index[findings[i].Building]; ok && findings[i].Building != "" {

@@ -16,6 +16,7 @@ type column[T any] struct {
 	style int
 	right bool // the header stands to the right, above numbers
 	aside bool // beside the print area
+	bar   bool // with a bar in the cell
 	put   func(r *rows, col, style int, x *T)
 }
 
@@ -131,10 +132,13 @@ func addListPage[T any](b *book, sheet string, l *list[T], from, to int) error {
 		return err
 	}
 	// The links of the rows are put beside this one.
-	if err := b.link(pg, "A1", overviewTarget); err != nil {
+	if err := b.link(pg, cellName(1, listBand), overviewTarget); err != nil {
 		return err
 	}
 	if err := b.table(pg, l.table, 1, listHead, last, heads); err != nil {
+		return err
+	}
+	if err := cellBars(b, pg, l.columns, last); err != nil {
 		return err
 	}
 	everything := "A1:" + cellName(len(heads), last)
@@ -147,9 +151,26 @@ func addListPage[T any](b *book, sheet string, l *list[T], from, to int) error {
 		}
 	}
 	return b.setPrint(pg, layout{
-		paper: paperA3, wide: l.wide, titleRows: "1:" + itoa(listHead), titleCols: "A:" + letters[max(1, l.frozen)],
+		wide: l.wide, titleRows: "1:" + itoa(listHead), titleCols: "A:" + letters[max(1, l.frozen)],
 		area: "A1:" + cellName(printed, last),
 	})
+}
+
+// cellBars puts a bar behind each number of the columns that want one.
+func cellBars[T any](b *book, pg *page, columns []column[T], last int) error {
+	for i := range columns {
+		if !columns[i].bar {
+			continue
+		}
+		cells := cellName(i+1, listFirst) + ":" + cellName(i+1, last)
+		err := b.f.SetConditionalFormat(pg.name, cells, []excelize.ConditionalFormatOptions{{
+			Type: "data_bar", Criteria: "=", MinType: "num", MinValue: "0", MaxType: "max", BarColor: "#" + barFill, BarSolid: true,
+		}})
+		if err != nil {
+			return err
+		}
+	}
+	return nil
 }
 
 // backText is the link at the top of each sheet.
@@ -159,15 +180,15 @@ const overviewTarget = "'Overview'!A1"
 
 func writeListTop[T any](b *book, r *rows, l *list[T]) {
 	r.begin(1, 30)
-	r.text(1, b.st.backLink(), backText)
-	r.text(2, b.st.id(look{size: 16, bold: true, color: accent}), l.title)
+	r.text(1, b.st.id(look{size: 16, bold: true, color: accent}), l.title)
 	for i, n := range l.notes {
 		r.begin(2+i, 15)
-		r.text(2, b.st.subtitle(), n)
+		r.text(1, b.st.subtitle(), n)
 	}
 	r.begin(listBand, 16)
-	band := ""
-	for i := range l.columns {
+	r.text(1, b.st.backLink(), backText)
+	band := l.columns[0].band
+	for i := 1; i < len(l.columns); i++ {
 		c := &l.columns[i]
 		if c.band != band {
 			band = c.band
@@ -179,7 +200,7 @@ func writeListTop[T any](b *book, r *rows, l *list[T]) {
 	heads := make([]wrappedText, len(l.columns))
 	for i := range l.columns {
 		// Part of the width is taken by the filter's button.
-		heads[i] = wrappedText{l.columns[i].head, l.columns[i].width - 2}
+		heads[i] = wrappedText{l.columns[i].head, l.columns[i].width - 3}
 	}
 	r.begin(listHead, heightOf(9, heads...)+4)
 	for i := range l.columns {

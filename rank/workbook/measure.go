@@ -31,19 +31,19 @@ func (b *book) addMeasures() error {
 
 func (b *book) addMeasure(i int) error {
 	m, total := b.terms.measures[i], &b.summary.Measures[i]
-	shown := fmt.Sprintf("%s buildings", count(total.Applies))
+	shown := buildings(total.Applies)
 	if b.shown[i] < total.Applies {
-		shown = fmt.Sprintf("The best %s of %s buildings", count(b.shown[i]), count(total.Applies))
+		shown = fmt.Sprintf("The best %s of %s", count(b.shown[i]), buildings(total.Applies))
 	}
 	l := &list[measureRow]{
-		about: "Ranked: " + fmt.Sprintf("%s buildings where it applies and saves energy", count(total.Applies)),
+		about: "Ranked: " + buildings(total.Applies) + " where it applies and saves energy",
 		tab:   accent, title: m.Label,
 		notes: []string{
 			fmt.Sprintf("%s, ranked by %s. It does not apply to %s others and would save nothing in %s.",
 				shown, b.in.Yardstick.Words(), count(total.Excluded), count(total.NoSaving)),
 			"Money follows by formula from the costs and prices on the sheet Assumptions; energy, CO₂ and ranks are values of the run. Savings of several measures on one building do not add up.",
 		},
-		frozen: 3, rows: b.shown[i], table: m.Key,
+		frozen: 3, wide: 2, rows: b.shown[i], table: m.Key,
 		columns: b.measureColumns(m),
 	}
 	b.measureMoney(m, l)
@@ -56,7 +56,7 @@ func (b *book) addMeasure(i int) error {
 		x.money = b.terms.amounts(m, &x.work)
 		x.cautions = strings.Join(caution.Shorts(x.m.Cautions), "; ")
 	}
-	l.height = func(x *measureRow) float64 { return rowHeight(x.cautions) }
+	l.height = func(x *measureRow) float64 { return rowHeight(wrappedText{x.cautions, cautionWidth}) }
 	l.links = func(k *links, at, row int) { k.add(2, row, b.buildings.target(rowsOf[at].Index)) }
 	return addList(b, &b.measures[i], l)
 }
@@ -100,12 +100,12 @@ func (b *book) measureColumns(m *measureTerms) []column[measureRow] {
 	cur := b.currency()
 
 	number("", who, "Rank", 10, plain, 0, func(x *measureRow) float64 { return float64(x.rank) })
-	text(who, "Building", 13, func(x *measureRow) string { return x.b.ID })
+	text(who, "Building", 12, func(x *measureRow) string { return x.b.ID })
 	cols[len(cols)-1].style = b.st.textLink()
-	text(who, "Name", 24, func(x *measureRow) string { return x.b.Name })
-	text(who, "Address", 34, func(x *measureRow) string { return address(x.b.Street, x.b.Postcode, x.b.Town) })
-	text(who, "District", 14, func(x *measureRow) string { return x.b.District })
-	text(who, "Use", 18, func(x *measureRow) string { return x.b.Use })
+	text(who, "Name", 22, func(x *measureRow) string { return x.b.Name })
+	text(who, "Address", 32, func(x *measureRow) string { return address(x.b.Street, x.b.Postcode, x.b.Town) })
+	text(who, "District", 13, func(x *measureRow) string { return x.b.District })
+	text(who, "Use", 17, func(x *measureRow) string { return x.b.Use })
 	number("", who, "Year built", 8, plain, 0, func(x *measureRow) float64 {
 		if x.b.YearBuilt == 0 {
 			return math.NaN()
@@ -116,6 +116,7 @@ func (b *book) measureColumns(m *measureTerms) []column[measureRow] {
 	number("quantity", who, quantityHead(m.Unit), 11, whole, quantityDecimals, func(x *measureRow) float64 { return x.work.quantity })
 
 	number("saving", saves, "Saving (kWh/a)", 11, whole, energyDecimals, func(x *measureRow) float64 { return x.work.saving })
+	cols[len(cols)-1].bar = true
 	number("", saves, "Saving (share of delivered)", 11, percent, 6, func(x *measureRow) float64 {
 		return x.m.SavingKWh / (x.m.HeatBeforeKWh + x.m.FansBeforeKWh)
 	})
@@ -129,7 +130,7 @@ func (b *book) measureColumns(m *measureTerms) []column[measureRow] {
 	formula("perKWh", money, "Cost of saved energy ("+cur+"/kWh)", 12, three)
 
 	for k := building.NumKinds - 1; k >= 0; k-- {
-		number("", firm, kindLabels[k]+" (share)", 10, percent, 6, func(x *measureRow) float64 { return x.b.InputShare[k] })
+		number("", firm, kindLabels[k]+" (share)", 12, percent, 6, func(x *measureRow) float64 { return x.b.InputShare[k] })
 	}
 
 	number("companion", air, "Ventilation it brings (m³/h)", 12, whole, quantityDecimals, func(x *measureRow) float64 {
@@ -138,8 +139,9 @@ func (b *book) measureColumns(m *measureTerms) []column[measureRow] {
 		}
 		return x.work.companion
 	})
-	text(air, "Outdoor air today", 11, func(x *measureRow) string { return enough(x.b.UnderVentilated) })
-	text(air, "Outdoor air after", 11, func(x *measureRow) string { return enough(x.m.UnderVentilated) })
+	cols = append(cols,
+		airColumn(b, air, "Outdoor air today", func(x *measureRow) (known, tooLittle bool) { return true, x.b.UnderVentilated }),
+		airColumn(b, air, "Outdoor air after", func(x *measureRow) (known, tooLittle bool) { return true, x.m.UnderVentilated }))
 	text(air, "Cautions", cautionWidth, func(x *measureRow) string { return x.cautions })
 	cols[len(cols)-1].style = b.st.wrapped()
 
@@ -155,13 +157,6 @@ func (b *book) measureColumns(m *measureTerms) []column[measureRow] {
 	formula("upkeep", workings, "Upkeep ("+cur+"/a)", 10, whole)
 	aside(at)
 	return cols
-}
-
-func enough(underVentilated bool) string {
-	if underVentilated {
-		return "too little"
-	}
-	return "enough"
 }
 
 // measureMoney gives the columns of money their formulas.

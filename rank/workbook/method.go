@@ -58,7 +58,7 @@ func (b *book) addMethod() error {
 	s := &sheetBuilder{b: b, pg: pg, r: b.write(pg)}
 	s.next(30)
 	s.r.text(1, b.st.backLink(), backText)
-	s.r.text(2, b.st.id(look{size: 16, bold: true, color: accent}), "Method and cautions")
+	s.r.text(2, b.st.id(look{size: 16, bold: true, color: accent, fill: pale}), "Method and cautions")
 	if err := b.link(pg, "A1", overviewTarget); err != nil {
 		return err
 	}

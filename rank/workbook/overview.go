@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 
 	"kelvinrow/estimate/building"
 	"kelvinrow/estimate/caution"
@@ -17,14 +18,19 @@ import (
 const (
 	gridColumns = 12
 	gridWidth   = 11.5
+	gridPixels  = 86 // of a column of that width
 	leadCount   = 10
 )
+
+// pixels are what points come to at the 96 dpi charts are measured in.
+func pixels(points float64) int { return int(points * 96 / 72) }
 
 // opening writes the opening page.
 type opening struct {
 	sheetBuilder
-	merges []string
-	breaks []int
+	merges   []string
+	breaks   []int
+	contents int // its row
 }
 
 // across writes text over the columns from..to of the row.
@@ -46,7 +52,7 @@ func (o *opening) span(from, to, style int) {
 func (o *opening) title(text string) { o.heading(text, gridColumns) }
 
 func (o *opening) sentence(text string) {
-	o.next(heightOf(fontSize, wrappedText{text, gridColumns * gridWidth}))
+	o.next(heightOf(fontSize, wrappedText{text, gridColumns * gridWidth}) + 3)
 	o.across(1, gridColumns, o.b.st.prose(), text)
 }
 
@@ -54,7 +60,7 @@ func (b *book) fillOverview(pg *page) error {
 	o := &opening{sheetBuilder: sheetBuilder{b: b, pg: pg, r: b.write(pg)}}
 	b.masthead(o)
 	b.highlights(o)
-	steps := []func(*opening) error{b.losses, b.savings, b.leads, b.firmness, b.cautions, b.contents}
+	steps := []func(*opening) error{b.losses, b.savings, b.leads, b.supply, b.firmness, b.contents, b.cautions}
 	for _, step := range steps {
 		if err := step(o); err != nil {
 			return err
@@ -65,6 +71,9 @@ func (b *book) fillOverview(pg *page) error {
 	}
 	if o.err != nil {
 		return o.err
+	}
+	if err := b.link(pg, cellName(gridColumns, 2), quoteSheet(pg.name)+"!"+cellName(1, o.contents)); err != nil {
+		return err
 	}
 	for _, m := range o.merges {
 		from, to, _ := cutRange(m)
@@ -94,6 +103,7 @@ func (b *book) masthead(o *opening) {
 	o.next(16)
 	o.r.text(1, b.st.subtitle(), fmt.Sprintf("Portfolio %s, run %d of %s. Climate %s. Ranked by %s. kelvinrow %s.",
 		clean(run.Portfolio), run.Number, run.Time.UTC().Format("2 January 2006"), b.in.Climate.Name, b.in.Yardstick.Words(), run.Version))
+	o.r.text(gridColumns, b.st.id(look{link: true, align: "right"}), "Contents ›")
 	o.next(8)
 
 	energyCost := 0.0
@@ -141,8 +151,9 @@ func (b *book) highlights(o *opening) {
 	for _, s := range b.outstanding() {
 		o.sentence("•  " + s)
 	}
+	o.sentence("•  This is a screening. Read the cautions at the end of this page before acting on a number.")
 	if t.Failed > 0 {
-		o.sentence(fmt.Sprintf("•  %s buildings could not be estimated; the sheet Buildings says why.", count(t.Failed)))
+		o.sentence(fmt.Sprintf("•  %s could not be estimated; the sheet Buildings says why.", buildings(t.Failed)))
 	}
 }
 
@@ -163,15 +174,15 @@ func (b *book) outstanding() (out []string) {
 	}
 	if top >= 0 {
 		m := &b.summary.Measures[top]
-		text := fmt.Sprintf("The measure that would save most energy on its own is %s: %s MWh a year in %s buildings.",
-			quoted(b.terms.measures[top].Label), count(int(math.Round(m.SavingKWh/1000))), count(m.Applies))
+		text := fmt.Sprintf("The measure that would save most energy on its own is %s: %s MWh a year in %s.",
+			quoted(b.terms.measures[top].Label), count(int(math.Round(m.SavingKWh/1000))), buildings(m.Applies))
 		if n := m.Applies / 10; n > 0 {
 			text += fmt.Sprintf(" The tenth of these buildings that saves most brings %s of that.", share(b.topSaving(top, n), m.SavingKWh))
 		}
 		out = append(out, text)
 	}
 	if t.UnderVentilated > 0 {
-		out = append(out, fmt.Sprintf("%s buildings get less outdoor air today than their use needs. Tightening them without providing ventilation would harm people; where a measure does, it is shown with the ventilation it brings.", count(t.UnderVentilated)))
+		out = append(out, fmt.Sprintf("Too little outdoor air today, by calculation, for what their use needs: %s. Tightening them without providing ventilation would harm people; where a measure does, it is shown with the ventilation it brings.", buildings(t.UnderVentilated)))
 	}
 	if t.FloorAreaM2 > 0 {
 		out = append(out, fmt.Sprintf("%s of the inputs behind these numbers are defaults by age and use, %s were surveyed or metered (weighted by floor area).",
@@ -201,7 +212,7 @@ func (b *book) pathsByLoss() []state.Path {
 	return paths
 }
 
-// losses shows where the heat goes and what it runs on, beside a chart.
+// losses shows where the heat goes, beside a chart.
 func (b *book) losses(o *opening) error {
 	t := &b.summary.Totals
 	o.title("Where the heat goes")
@@ -212,7 +223,7 @@ func (b *book) losses(o *opening) error {
 	total := sum(t.LossByPathKWh[:])
 	first := o.row + 1
 	for _, p := range b.pathsByLoss() {
-		o.next(0)
+		o.next(ordinaryHeight)
 		o.across(1, 3, b.st.words(), pathLabels[p])
 		o.r.number(4, b.st.value(whole), t.LossByPathKWh[p]/1000, 3)
 		o.r.number(5, b.st.value(percent), ratio(t.LossByPathKWh[p], total), 6)
@@ -227,34 +238,19 @@ func (b *book) losses(o *opening) error {
 		{"Covered by sun, people and appliances", t.GainsUsedKWh},
 		{"Left to heat (heating need)", t.NeedKWh},
 	} {
-		o.next(0)
+		o.next(ordinaryHeight)
 		o.across(1, 3, strong, x.label)
-		o.r.number(4, b.st.id(look{bold: true, edge: line, format: whole, align: "right"}), x.v/1000, 3)
+		o.r.number(4, b.st.id(look{bold: true, edge: line, format: padded(whole), align: "right"}), x.v/1000, 3)
 		o.r.number(5, b.st.value(percent), ratio(x.v, total), 6)
 	}
-	o.skip()
-	o.next(30)
-	o.across(1, 2, b.st.head(), "Delivered today")
-	o.r.text(3, b.st.headRight(), "MWh/a")
-	o.r.text(4, b.st.headRight(), "Share")
-	o.r.text(5, b.st.headRight(), "Thousand "+b.currency()+"/a")
-	delivered := t.DeliveredKWh + t.FansKWh
-	for i, word := range b.summary.Carriers {
-		c := b.terms.byWord[word]
-		o.next(0)
-		o.across(1, 2, b.st.words(), capital(word))
-		o.r.number(3, b.st.value(whole), t.CarrierKWh[i]/1000, 3)
-		o.r.number(4, b.st.value(percent), ratio(t.CarrierKWh[i], delivered), 6)
-		o.r.formula(5, b.st.value(whole), "C#*"+c.price, float64(fixed(t.CarrierKWh[i]/1000, 3)*c.PricePerKWh))
-	}
 	sheet := quoteSheet(o.pg.name)
-	height := 20.0*(4.0/3.0) + float64(o.row-top)*17.4
+	height := pixels(20 + ordinaryHeight*float64(o.row-top))
 	return b.bars(o.pg, cellName(6, top), bars{
 		title:      "Heat lost by path (MWh a year)",
 		alt:        "Bar chart of the heat lost by path, largest first; the numbers stand in the table to its left",
 		categories: sheet + "!" + absolute(cellName(1, first)) + ":" + absolute(cellName(1, last)),
 		values:     sheet + "!" + absolute(cellName(4, first)) + ":" + absolute(cellName(4, last)),
-		color:      accent, format: whole, width: 7 * 85, height: int(height),
+		color:      accent, format: whole, width: 7*gridPixels - 12, height: height,
 	})
 }
 
@@ -275,7 +271,7 @@ func (b *book) savings(o *opening) error {
 	delivered := b.summary.DeliveredKWh + b.summary.FansKWh
 	for i, m := range b.terms.measures {
 		t, x := &b.summary.Measures[i], b.total(i)
-		o.next(0)
+		o.next(ordinaryHeight)
 		o.across(1, 3, b.st.textLink(), m.Label)
 		o.linkTo(1, quoteSheet(m.sheet)+"!A1")
 		o.r.int(4, b.st.value(whole), t.Applies)
@@ -301,26 +297,29 @@ func (b *book) savings(o *opening) error {
 	if len(b.terms.measures) == 0 {
 		return nil
 	}
-	at := o.row + 2
-	height := 60 + 24*len(b.terms.measures)
+	at := o.row + 1
+	height := 40 + 19*len(b.terms.measures)
 	sheet := quoteSheet(o.pg.name)
 	span := func(col int) string {
 		return sheet + "!" + absolute(cellName(col, first)) + ":" + absolute(cellName(col, last))
 	}
 	if err := b.bars(o.pg, cellName(1, at), bars{
 		title: "Saving (MWh a year)", alt: "Bar chart of the saving of each measure; the numbers stand in the table above",
-		categories: span(1), values: span(5), color: accent, format: whole, width: 6*85 - 8, height: height,
+		categories: span(1), values: span(5), color: accent, format: whole, width: 6*gridPixels - 8, height: height,
 	}); err != nil {
 		return err
 	}
 	if err := b.bars(o.pg, cellName(7, at), bars{
 		title: "Cost (thousand " + b.currency() + ")", alt: "Bar chart of the cost of each measure; the numbers stand in the table above",
-		categories: span(1), values: span(8), color: ochre, format: whole, width: 6*85 - 8, height: height,
+		categories: span(1), values: span(8), color: ochre, format: whole, width: 6*gridPixels - 8, height: height,
 	}); err != nil {
 		return err
 	}
-	// Rows without a height of their own are 12.75 points, 17 pixels, high.
-	o.row = at + int(math.Ceil(float64(height)/17)) + 1
+	// The rows below the charts are given their height, so that the charts cover
+	// the same ones in every program.
+	for range int(math.Ceil(float64(height+8) / float64(pixels(ordinaryHeight)))) {
+		o.next(ordinaryHeight)
+	}
 	return nil
 }
 
@@ -335,38 +334,36 @@ func (b *book) leads(o *opening) error {
 	o.breaks = append(o.breaks, o.row+1)
 	leads := rank.Leading(b.in.Buildings, b.lists, b.in.Yardstick, leadCount)
 	o.title("The buildings that matter most")
-	o.sentence(fmt.Sprintf("The %d buildings where a single measure does most, by %s.", len(leads), b.in.Yardstick.Words()))
+	o.sentence(fmt.Sprintf("Those among the first %d for most measures, by %s; of equals first the one where a single measure does most.", leadCount, b.in.Yardstick.Words()))
 	o.next(32)
-	o.r.text(1, b.st.headRight(), "No.")
-	o.across(2, 3, b.st.head(), "Building")
-	o.across(4, 5, b.st.head(), "Use, year built")
+	head := b.st.head()
+	o.across(1, 3, head, "Building")
+	o.across(4, 5, head, "Use, year built")
 	o.r.text(6, b.st.headRight(), "Floor area (m²)")
-	o.across(7, 9, b.st.head(), "Measure that does most")
-	o.r.text(10, b.st.headRight(), "Saving (MWh/a)")
-	o.r.text(11, b.st.headRight(), "Share of delivered")
+	o.r.text(7, b.st.headRight(), "Measures, first "+itoa(leadCount))
+	o.across(8, 10, head, "Measure that does most")
+	o.r.text(11, b.st.headRight(), "Saving there (MWh/a)")
 	o.r.text(12, b.st.headRight(), "Inputs by default")
-	plainRow := func(l look) int { return b.st.id(l) }
-	text, link := plainRow(look{format: asText}), plainRow(look{format: asText, link: true, bold: true})
-	measureLink := plainRow(look{format: asText, link: true})
+	number := func(format string) int { return b.st.id(look{format: padded(format), align: "right"}) }
+	text, link := b.st.id(look{format: asText}), b.st.id(look{format: asText, link: true, bold: true})
+	measureLink := b.st.id(look{format: asText, link: true})
 	why := b.st.id(look{color: muted, wrap: true, valign: "top", size: 9, edge: line})
-	for i, lead := range leads {
+	for i := range leads {
+		lead := &leads[i]
 		bl := &b.in.Buildings[lead.Index]
-		m := &bl.Measures[lead.Measure]
 		o.next(16)
-		o.r.int(1, plainRow(look{format: plain, align: "right"}), i+1)
-		o.across(2, 3, link, label(bl))
-		o.linkTo(2, b.buildings.target(lead.Index))
+		o.across(1, 3, link, label(bl))
+		o.linkTo(1, b.buildings.target(lead.Index))
 		o.across(4, 5, text, useAndYear(bl))
-		o.r.number(6, plainRow(look{format: whole, align: "right"}), bl.FloorAreaM2, 1)
-		o.across(7, 9, measureLink, b.terms.measures[lead.Measure].Label)
-		o.linkTo(7, b.measureTarget(lead.Measure, lead.Index))
-		o.r.number(10, plainRow(look{format: whole, align: "right"}), m.SavingKWh/1000, 3)
-		o.r.number(11, plainRow(look{format: percent, align: "right"}), ratio(m.SavingKWh, m.HeatBeforeKWh+m.FansBeforeKWh), 6)
-		o.r.number(12, plainRow(look{format: percent, align: "right"}), bl.InputShare[building.Default], 6)
-		because := b.because(bl, &lead)
-		o.next(heightOf(9, wrappedText{because, (gridColumns - 1) * gridWidth}))
-		o.r.blank(1, b.st.words())
-		o.across(2, gridColumns, why, because)
+		o.r.number(6, number(whole), bl.FloorAreaM2, 1)
+		o.r.int(7, number(plain), len(lead.Among))
+		o.across(8, 10, measureLink, b.terms.measures[lead.Measure].Label)
+		o.linkTo(8, b.measureTarget(lead.Measure, lead.Index))
+		o.r.number(11, number(whole), bl.Measures[lead.Measure].SavingKWh/1000, 3)
+		o.r.number(12, number(percent), bl.InputShare[building.Default], 6)
+		because := b.because(bl, lead)
+		o.next(heightOf(9, wrappedText{because, gridColumns * gridWidth}))
+		o.across(1, gridColumns, why, because)
 	}
 	return nil
 }
@@ -402,24 +399,24 @@ func (b *book) because(bl *result.Building, lead *rank.Lead) string {
 			top = p
 		}
 	}
-	s := fmt.Sprintf("Loses most through %s (%s). Heating need %.0f kWh/(m² a), the portfolio's mean is %.0f.",
+	s := fmt.Sprintf("Loses most through %s (%s). Heating need %.0f kWh/(m² a), the portfolio's mean is %.0f. Ranks: ",
 		lower(pathLabels[top]), share(bl.LossByPathKWh[top], loss),
 		perArea(bl.NeedKWh, bl.FloorAreaM2), perArea(b.summary.NeedKWh, b.summary.FloorAreaM2))
-	switch n := len(lead.Among); {
-	case n == 1:
-		s += fmt.Sprintf(" Among the first %d for one measure.", leadCount)
-	case n > 1:
-		s += fmt.Sprintf(" Among the first %d for %d measures.", leadCount, n)
-	}
-	if shorts := caution.Shorts(bl.Cautions | bl.Measures[lead.Measure].Cautions); len(shorts) > 0 {
-		s += " Cautions: "
-		for i, c := range shorts {
-			if i > 0 {
-				s += "; "
-			}
-			s += c
+	const shown = 4
+	among := slices.Clone(lead.Among)
+	slices.SortStableFunc(among, func(x, y int) int { return cmp.Compare(b.places[x][lead.Index], b.places[y][lead.Index]) })
+	for i, m := range among[:min(shown, len(among))] {
+		if i > 0 {
+			s += ", "
 		}
-		s += "."
+		s += fmt.Sprintf("%s %d", lower(b.terms.measures[m].Label), b.places[m][lead.Index])
+	}
+	if n := len(among) - shown; n > 0 {
+		s += fmt.Sprintf(" and %d more", n)
+	}
+	s += "."
+	if shorts := caution.Shorts((bl.Cautions | bl.Measures[lead.Measure].Cautions) &^ caution.Defaults); len(shorts) > 0 {
+		s += " Cautions: " + strings.Join(shorts, "; ") + "."
 	}
 	return s
 }

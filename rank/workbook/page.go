@@ -22,15 +22,11 @@ type page struct {
 	links func(*links)
 }
 
-// size of paper, as the file format numbers them.
-const (
-	paperA3 = 8
-	paperA4 = 9
-)
+// paperA4 as the file format numbers it.
+const paperA4 = 9
 
 // layout is the print set-up of a page.
 type layout struct {
-	paper     int
 	portrait  bool
 	wide      int    // pages side by side; 0 is 1
 	titleRows string // repeated on each page, such as "1:5"
@@ -60,16 +56,13 @@ func (b *book) addPage(name, about string, tab string) (*page, error) {
 func (b *book) write(pg *page) *rows { return &rows{ctx: b.ctx, w: &pg.top} }
 
 func (b *book) setPrint(pg *page, l layout) error {
-	landscape, one, zero := "landscape", 1, 0
+	landscape, paper, zero, order := "landscape", paperA4, 0, "overThenDown"
 	if l.portrait {
 		landscape = "portrait"
 	}
 	wide := max(1, l.wide)
-	if l.paper == 0 {
-		l.paper = paperA4
-	}
 	err := b.f.SetPageLayout(pg.name, &excelize.PageLayoutOptions{
-		Size: &l.paper, Orientation: &landscape, FitToWidth: &wide, FitToHeight: &zero,
+		Size: &paper, Orientation: &landscape, FitToWidth: &wide, FitToHeight: &zero, PageOrder: &order,
 	})
 	if err != nil {
 		return err
@@ -84,7 +77,6 @@ func (b *book) setPrint(pg *page, l layout) error {
 	}); err != nil {
 		return err
 	}
-	_ = one
 	if err := b.f.SetHeaderFooter(pg.name, &excelize.HeaderFooterOptions{
 		OddFooter: "&L&8" + cut(strings.ReplaceAll(b.title, "&", "&&"), 90) + "&C&8&A&R&8Page &P of &N",
 	}); err != nil {
@@ -178,15 +170,38 @@ func (b *book) widths(pg *page, w ...float64) error {
 	return nil
 }
 
+// lettersPerDigit is how many letters of ordinary text fit into the width of a
+// digit, in which columns are measured. In Arial it is about 1.25; the rest is
+// reserve for other programs and printers.
+const lettersPerDigit = 1.18
+
+func linesIn(size float64, c wrappedText) int {
+	return lines(c.text, c.width*lettersPerDigit*fontSize/size)
+}
+
+// ordinaryHeight is the height of a row of one line, in points.
+const ordinaryHeight = 15
+
 // heightOf is the height of a row that holds wrapped text in cells of given
-// widths. Widths count digits of the ordinary font; letters are a little
-// narrower on average, and the estimate keeps that as reserve.
+// widths.
 func heightOf(size float64, cells ...wrappedText) float64 {
 	n := 1
 	for _, c := range cells {
-		n = max(n, lines(c.text, c.width*fontSize/size))
+		n = max(n, linesIn(size, c))
 	}
-	return math.Ceil(float64(n)*size*1.3) + 3
+	if n == 1 {
+		return ordinaryHeight
+	}
+	return math.Ceil(float64(n)*size*1.28) + 4
+}
+
+// rowHeight is heightOf for the rows of a list, which are of size 9 where they
+// are wrapped: 0, the ordinary height, for one line.
+func rowHeight(cells ...wrappedText) float64 {
+	if h := heightOf(9, cells...); h > ordinaryHeight {
+		return h
+	}
+	return 0
 }
 
 type wrappedText struct {

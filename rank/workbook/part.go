@@ -10,6 +10,7 @@ import (
 	"io"
 	"io/fs"
 	"os"
+	"regexp"
 	"runtime"
 	"slices"
 	"strings"
@@ -69,6 +70,11 @@ func (a *archive) Close() (err error) {
 			p.packed.remove()
 		}
 	}()
+	for _, p := range a.parts {
+		if p.name == contentTypes {
+			p.sortDefaults()
+		}
+	}
 	g, ctx := errgroup.WithContext(a.ctx)
 	g.SetLimit(runtime.GOMAXPROCS(0))
 	for _, p := range a.parts {
@@ -83,9 +89,10 @@ func (a *archive) Close() (err error) {
 		return err
 	}
 	z := zip.NewWriter(a.w)
+	day, second := dosTime(a.time)
 	for _, p := range a.parts {
 		w, err := z.CreateRaw(&zip.FileHeader{
-			Name: p.name, Method: zip.Deflate, Modified: a.time,
+			Name: p.name, Method: zip.Deflate, ModifiedDate: day, ModifiedTime: second,
 			CRC32: p.crc, UncompressedSize64: p.size, CompressedSize64: uint64(p.packed.size),
 		})
 		if err != nil {
@@ -98,9 +105,38 @@ func (a *archive) Close() (err error) {
 	return z.Close()
 }
 
+// dosTime is a time as zip entries hold it: whole days since 1980, every second
+// second.
+func dosTime(t time.Time) (day, second uint16) {
+	year := min(max(t.Year(), 1980), 2107)
+	return uint16(t.Day() + int(t.Month())<<5 + (year-1980)<<9),
+		uint16(t.Second()/2 + t.Minute()<<5 + t.Hour()<<11)
+}
+
+const contentTypes = "[Content_Types].xml"
+
+var defaultType = regexp.MustCompile(`<Default [^>]*>\s*</Default>`)
+
+// sortDefaults puts the types by extension into a fixed order: excelize adds those
+// of pictures in the order of a map.
+func (p *part) sortDefaults() {
+	xml := p.content.Bytes()
+	var found []string
+	for _, m := range defaultType.FindAll(xml, -1) {
+		found = append(found, string(m))
+	}
+	slices.Sort(found)
+	i := 0
+	sorted := defaultType.ReplaceAllFunc(xml, func([]byte) []byte {
+		i++
+		return []byte(found[i-1])
+	})
+	p.content = *bytes.NewBuffer(sorted)
+}
+
 func order(name string) int {
 	switch {
-	case name == "[Content_Types].xml":
+	case name == contentTypes:
 		return 0
 	case strings.HasPrefix(name, "_rels/"):
 		return 1

@@ -4,6 +4,8 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"slices"
+	"strings"
 
 	"kelvinrow/estimate/archetype"
 	"kelvinrow/estimate/fabric"
@@ -27,7 +29,7 @@ func (b *book) addRules() error {
 			"For buildings of this use, attachment, span of years, construction and region (empty: any), the property has this value. The most specific rule wins.",
 			"Low and high are the 5th and 95th percentile over such buildings. This version ranks by the typical value.",
 		},
-		frozen: 2, rows: len(set.Rules), table: "rules",
+		frozen: 2, wide: 2, rows: len(set.Rules), table: "rules",
 	}
 	text := func(band, head string, width float64, get func(*archetype.Rule) string) {
 		l.columns = append(l.columns, textColumn(b, band, head, width, get))
@@ -65,19 +67,16 @@ func (b *book) addRules() error {
 	number(who, "Years to", 9, plain, func(r *archetype.Rule) float64 { return year(r.YearTo) })
 	text(who, "Construction", 24, func(r *archetype.Rule) string { return r.Construction })
 	text(who, "Region", 10, func(r *archetype.Rule) string { return r.Region })
-	number(how, "Typical", 10, "General", func(r *archetype.Rule) float64 { return value(r, r.Typical) })
-	number(how, "Low", 10, "General", func(r *archetype.Rule) float64 { return value(r, r.Low) })
-	number(how, "High", 10, "General", func(r *archetype.Rule) float64 { return value(r, r.High) })
+	number(how, "Typical", 10, general, func(r *archetype.Rule) float64 { return value(r, r.Typical) })
+	number(how, "Low", 10, general, func(r *archetype.Rule) float64 { return value(r, r.Low) })
+	number(how, "High", 10, general, func(r *archetype.Rule) float64 { return value(r, r.High) })
 	text(how, "Word", 34, func(r *archetype.Rule) string { return r.Word })
 	number(how, "Spread shared by all (share)", 12, percent, func(r *archetype.Rule) float64 { return r.Shared })
 	text(how, "Source", 90, func(r *archetype.Rule) string { return r.Source })
 	l.columns[len(l.columns)-1].style = b.st.wrapped()
 	l.load = func(i int, x *archetype.Rule) { *x = set.Rules[i] }
 	l.height = func(r *archetype.Rule) float64 {
-		if runeLen(r.Source) <= 90 {
-			return 0
-		}
-		return heightOf(9, wrappedText{r.Source, 90})
+		return rowHeight(wrappedText{r.Source, 90})
 	}
 	return addList(b, &s, l)
 }
@@ -140,17 +139,29 @@ func (b *book) addBuildups() error {
 		if x.n > 1 {
 			return ""
 		}
-		return x.b.Source
+		return once(x.b.Source)
 	})
 	l.columns[len(l.columns)-1].style = b.st.wrapped()
 	l.load = func(i int, x *layerRow) { *x = all[i] }
 	l.height = func(x *layerRow) float64 {
-		if x.n > 1 || runeLen(x.b.Source) <= 90 {
+		if x.n > 1 {
 			return 0
 		}
-		return heightOf(9, wrappedText{x.b.Source, 90})
+		return rowHeight(wrappedText{once(x.b.Source), 90})
 	}
 	return addList(b, &s, l)
+}
+
+// once drops repeated parts of a source note that was put together from those of
+// the layers.
+func once(source string) string {
+	var parts []string
+	for part := range strings.SplitSeq(source, "; ") {
+		if !slices.Contains(parts, part) {
+			parts = append(parts, part)
+		}
+	}
+	return strings.Join(parts, "; ")
 }
 
 // addMaterials lists the conductivities that the layers are made of.

@@ -16,7 +16,7 @@ const (
 	pale      = "E4EDEF"
 	line      = "C5D0D4"
 	ochre     = "A85F24"
-	paleOchre = "F8EDE1"
+	barFill   = "B5D3D8"
 	inputFill = "FFF4D6"
 	inputEdge = "C9A94E"
 	white     = "FFFFFF"
@@ -40,6 +40,7 @@ const (
 	four     = "0.0000"
 	percent  = "0 %"
 	percent1 = "0.0 %"
+	general  = "General"
 )
 
 // look is how a cell looks. Each look becomes one style of the workbook.
@@ -131,9 +132,7 @@ func (s *styles) heading() int {
 }
 func (s *styles) headingRest() int { return s.id(look{edge: accent}) }
 func (s *styles) prose() int       { return s.id(look{wrap: true, valign: "top"}) }
-func (s *styles) note() int        { return s.id(look{color: muted, wrap: true, valign: "top", size: 9}) }
-func (s *styles) linkText() int    { return s.id(look{link: true}) }
-func (s *styles) backLink() int    { return s.id(look{link: true, size: 9}) }
+func (s *styles) backLink() int    { return s.id(look{link: true, size: 9, fill: pale}) }
 
 // head is the header cell of a table.
 func (s *styles) head() int {
@@ -141,7 +140,7 @@ func (s *styles) head() int {
 }
 
 func (s *styles) headRight() int {
-	return s.id(look{bold: true, color: white, fill: accent, wrap: true, size: 9, align: "right"})
+	return s.id(look{bold: true, color: white, fill: accent, wrap: true, size: 9, align: "right", indent: 1})
 }
 
 // band names a group of columns above the header.
@@ -150,12 +149,27 @@ func (s *styles) band() int { return s.id(look{bold: true, color: accent, fill: 
 func (s *styles) text() int     { return s.id(look{format: asText, edge: line}) }
 func (s *styles) textLink() int { return s.id(look{format: asText, edge: line, link: true}) }
 func (s *styles) words() int    { return s.id(look{edge: line}) }
-func (s *styles) wrapped() int  { return s.id(look{edge: line, wrap: true, size: 9}) }
+func (s *styles) wrapped() int  { return s.id(look{edge: line, wrap: true, size: 9, indent: 1}) }
 func (s *styles) value(format string) int {
-	return s.id(look{format: format, edge: line, align: "right"})
+	return s.id(look{format: padded(format), edge: line, align: "right"})
 }
+
+// padded keeps numbers, and words in their place, off the right edge. An indent
+// would do, but LibreOffice 7.4 prints it in some rows and not in others.
+func padded(format string) string {
+	switch format {
+	case "", asText:
+		return `General_);-General_);General_);@_)`
+	case general:
+		return `General_)`
+	}
+	return format + "_);-" + format + "_);" + format + "_);@_)"
+}
+
+// alarm is a word that must not be overlooked.
+func (s *styles) alarm() int { return s.id(look{format: asText, edge: line, bold: true, color: ochre}) }
 
 // input is a cell that formulas use and a reader may change.
 func (s *styles) input(format string) int {
-	return s.id(look{format: format, fill: inputFill, edge: inputEdge, box: true, align: "right"})
+	return s.id(look{format: padded(format), fill: inputFill, edge: inputEdge, box: true, align: "right"})
 }
