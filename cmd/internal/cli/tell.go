@@ -125,6 +125,10 @@ func (a *app) tellRank(o *pipeline.RankOutcome) {
 		fmt.Fprintf(a.out, ", %s could not be (see Data issues)", count(s.Failed))
 	}
 	fmt.Fprintln(a.out)
+	if s.FloorAreaM2 == 0 {
+		fmt.Fprintf(a.out, "\nNo building could be estimated: the files bring no floor area or volume.\nRun %d        %s\n", o.Run.Number, o.Out)
+		return
+	}
 	fmt.Fprintf(a.out, "Heat         need %sh/a (%.0f kWh/m2), delivered %sh/a, %s CO2/a\n",
 		amount(s.NeedKWh, "W"), s.NeedKWh/s.FloorAreaM2, amount(s.DeliveredKWh, "W"), tonnes(s.CO2Kg))
 	var total float64

@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"io/fs"
 	"os"
 	"path/filepath"
 	"time"
@@ -111,6 +112,9 @@ func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, erro
 			dir = filepath.Dir(f.path)
 		}
 		path, err := mend.Write(ctx, f.path, f.report, dir)
+		if errors.Is(err, fs.ErrPermission) {
+			path, err = mend.Write(ctx, f.path, f.report, ".") // the sources may be on a read-only share
+		}
 		if err != nil {
 			return nil, fmt.Errorf("the data is loaded, but not its rows to fix: %w", err)
 		}
