@@ -4,225 +4,309 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
-
-	"kelvinrow/estimate/building"
 )
 
-// truth is one invented building as it really is. The workbooks tell parts of
-// it, in the words of their departments.
-type truth struct {
-	id, name, street, postcode, town, district string
-	use                                        building.Use
-	attachment                                 building.Attachment
-	year, windowYear, roofYear                 int
-	areaM2, volumeM3, windowM2                 float64
-	storeys                                    float64
-	wall, roof, floor, glazing                 string
-	ventilation                                building.Ventilation
-	exposure                                   building.Exposure
-	heating, carrier                           string
-	listed, facadeStays                        bool
-	occupants, dwellings                       int
-	n50, wallU, windowU                        float64
-	heatKWh                                    float64
-}
+type use uint8
 
-// towns of the invented landlord, each with its districts.
-var towns = []struct {
-	name, postcode string
-	districts      []string
-}{
-	{"Vexholm", "VX1", []string{"Harbourside", "Upper Vexholm", "Tanner's Reach"}},
-	{"Quarrowby", "QB4", []string{"Old Quarrowby", "Millstream"}},
-	{"Zellerstead", "ZS2", []string{"Lantern Hill", "Zeller Green"}},
-	{"Ombermouth", "OM7", []string{"Quayfront", "Nether Omber"}},
-}
-
-var (
-	streetFirst  = []string{"Gimbal", "Tinder", "Larkspool", "Wickerby", "Copperbeam", "Fennick", "Harrowsedge", "Quillon", "Marlpit", "Osmund", "Pindle", "Russetfold", "Sallowby", "Thrumble", "Umberline", "Withy"}
-	streetSecond = []string{"Row", "Walk", "Lane", "Street", "Rise", "Court", "Terrace", "Wharf"}
-	nameFirst    = []string{"Alderfold", "Brightmoor", "Candlewick", "Dovescroft", "Elmspindle", "Foxglade", "Greyshaw", "Hollinsby", "Ivorstead", "Juniper", "Kestrelby", "Lindrick"}
+const (
+	detached use = iota
+	semi
+	terraced
+	block
+	school
+	nursery
+	hall
+	church
+	careHome
+	sportsHall
+	office
+	shop
+	workshop
+	numUses
 )
 
-var useNames = map[building.Use]string{
-	building.ApartmentBlock: "House", building.School: "School", building.Nursery: "Nursery", building.Office: "Office",
-	building.Hall: "Hall", building.Church: "Church", building.CareHome: "Care Home", building.Workshop: "Workshop",
-	building.SportsHall: "Sports Hall", building.Shop: "Shop",
+func (u use) house() bool   { return u <= terraced }
+func (u use) housing() bool { return u <= block }
+
+// public buildings belong to the bureau for schools and parishes.
+func (u use) public() bool { return u >= school && u <= sportsHall }
+
+// commercial buildings stand on a sheet of their own in the register.
+func (u use) commercial() bool { return u >= office }
+
+// useWeights is the make-up of the stock, in percent of the sites drawn.
+var useWeights = [numUses]float64{9, 6, 6, 30, 4, 2.5, 2.5, 2.5, 2, 1.5, 5, 3, 2}
+
+// asset is the truth about one building, which no department fully knows.
+type asset struct {
+	held held
+
+	id, name         string
+	street           string
+	house            int
+	town             *town
+	quarter          string
+	use              use
+	attached         int // sides shared
+	year             int
+	yearWindows      int // 0: as built
+	yearRoof         int
+	yearWall         int
+	floorAreaM2      float64
+	storeyHeightM    float64
+	storeys          int
+	footprintM2      float64
+	perimeterM       float64
+	wallM2           float64
+	windowM2         float64
+	roofM2           float64
+	attic            bool // heated, under a pitched roof
+	flat             bool
+	cellar           bool
+	wall             construction
+	wallU            float64
+	roofU            float64
+	floorU           float64
+	windowU          float64
+	glazing          glazing
+	ventilation      ventilation
+	recovery         float64
+	n50              float64
+	heating          heating
+	carrier          carrier
+	efficiency       float64
+	dwellings        int
+	occupants        int
+	let              int
+	listed           bool
+	facadeStays      bool
+	heatKWh          float64 // delivered in a mean year
+	includesHotWater bool
 }
 
-// eras of building, with their share of the stock.
-var eras = []struct {
-	from, to int
-	share    float64
-}{
-	{1860, 1918, 0.18}, {1919, 1948, 0.12}, {1949, 1968, 0.28}, {1969, 1978, 0.20}, {1979, 1994, 0.13}, {1995, 2008, 0.06}, {2009, 2024, 0.03},
-}
+func (a *asset) volumeM3() float64 { return a.floorAreaM2 * a.storeyHeightM }
 
-// stock invents n buildings. The same seed gives the same stock.
-func stock(n int, seed int64) []truth {
-	r := rand.New(rand.NewPCG(uint64(seed), 0x6b72))
-	out := make([]truth, n)
-	for i := range out {
-		out[i] = one(r, i)
+func (a *asset) grossVolumeM3() float64 {
+	if a.storeys <= 3 {
+		return a.volumeM3() / 0.76
 	}
-	return out
+	return a.volumeM3() / 0.80
 }
 
-func between(r *rand.Rand, low, high float64) float64 { return low + (high-low)*r.Float64() }
-
-func choose[T any](r *rand.Rand, from []T) T { return from[r.IntN(len(from))] }
-
-// spread is a factor around 1, log-normal with the given sigma.
-func spread(r *rand.Rand, sigma float64) float64 { return math.Exp(sigma * r.NormFloat64()) }
-
-func one(r *rand.Rand, i int) truth {
-	t := truth{}
-	town := towns[min(len(towns)-1, int(r.Float64()*r.Float64()*float64(len(towns))*1.3))]
-	t.town, t.district = town.name, choose(r, town.districts)
-	t.postcode = fmt.Sprintf("%s %d%c%c", town.postcode, 1+r.IntN(9), 'A'+rune(r.IntN(26)), 'A'+rune(r.IntN(26)))
-	t.street = fmt.Sprintf("%s %s %d", choose(r, streetFirst), choose(r, streetSecond), 1+r.IntN(140))
-	t.use = pickUse(r)
-	t.id = fmt.Sprintf("%s-%04d", map[bool]string{true: "H", false: "B"}[t.use.IsHouse()], i+1)
-	if word, ok := useNames[t.use]; ok {
-		t.name = choose(r, nameFirst) + " " + word
+// newStock draws the stock site by site: a row of like houses, an estate of like
+// blocks, or a single building.
+func newStock(opt Options) []asset {
+	rng := rand.New(rand.NewPCG(uint64(opt.Seed), 0))
+	stock := make([]asset, 0, opt.Buildings)
+	next := make([]int, len(towns))
+	weights := make([]float64, len(towns))
+	for i := range towns {
+		weights[i] = towns[i].weight
 	}
-	x := r.Float64()
-	for _, e := range eras {
-		if x -= e.share; x <= 0 || e.to == 2024 {
-			t.year = e.from + r.IntN(e.to-e.from+1)
-			break
+	for len(stock) < opt.Buildings {
+		t := weighted(rng, weights)
+		u := use(weighted(rng, useWeights[:]))
+		n := 1
+		switch u {
+		case detached:
+			n = 1 + rng.IntN(8)
+		case semi:
+			n = 2 * (1 + rng.IntN(6))
+		case terraced:
+			n = 4 + rng.IntN(13)
+		case block:
+			n = 1 + rng.IntN(6)
+		}
+		site := newSite(rng, &towns[t], u)
+		n = min(n, opt.Buildings-len(stock))
+		first := 1 + rng.IntN(60)
+		for i := range n {
+			next[t]++
+			a := site.building(rng, i, n)
+			a.id = fmt.Sprintf("%s-%04d", towns[t].letter, next[t])
+			a.house = first + i
+			a.assign(rng)
+			stock = append(stock, a)
 		}
 	}
-	shape(r, &t)
-	fabricOf(r, &t)
-	systems(r, &t)
-	return t
+	return stock
 }
 
-func pickUse(r *rand.Rand) building.Use {
-	x := r.Float64()
-	for _, u := range []struct {
-		use   building.Use
-		share float64
-	}{
-		{building.ApartmentBlock, 0.44}, {building.TerracedHouse, 0.2}, {building.SemiDetachedHouse, 0.13}, {building.DetachedHouse, 0.07},
-		{building.School, 0.04}, {building.Church, 0.03}, {building.Hall, 0.025}, {building.Office, 0.02}, {building.CareHome, 0.015},
-		{building.Nursery, 0.015}, {building.Workshop, 0.008}, {building.SportsHall, 0.005},
-	} {
-		if x -= u.share; x <= 0 {
-			return u.use
+// site is what the buildings of one site have in common.
+type site struct {
+	asset
+	areaM2 float64
+	aspect float64
+}
+
+func newSite(rng *rand.Rand, t *town, u use) *site {
+	s := &site{aspect: between(rng, 1.1, 2.4)}
+	s.town, s.use, s.quarter, s.street = t, u, pick(rng, quarters), street(rng)
+	e := weighted(rng, eraWeights[:])
+	s.year = eraYears[e][0] + rng.IntN(eraYears[e][1]-eraYears[e][0]+1)
+	old := s.year < 1946
+	s.storeyHeightM = between(rng, 2.4, 2.6)
+	if old {
+		s.storeyHeightM = between(rng, 2.6, 3.2)
+	}
+	s.storeys = 2
+	s.wall = drawWall(rng, s.year, u)
+	switch u {
+	case detached:
+		s.areaM2, s.storeys = around(rng, 140, 0.25), 1+rng.IntN(2)
+	case semi:
+		s.areaM2 = around(rng, 108, 0.15)
+	case terraced:
+		s.areaM2 = around(rng, 90, 0.15)
+	case block:
+		s.storeys = 3 + rng.IntN(3)
+		if s.year > 1960 && s.year < 1979 && rng.Float64() < 0.25 {
+			s.storeys = 8 + rng.IntN(5)
+		}
+		s.areaM2 = float64(s.storeys) * float64(2+rng.IntN(6)) * between(rng, 62, 88)
+		s.aspect = between(rng, 1.4, 4)
+	case school:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 3200, 0.5), 1+rng.IntN(3), between(rng, 3.0, 3.6)
+		s.aspect = between(rng, 2, 4)
+	case nursery:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 620, 0.35), 1, between(rng, 2.7, 3.2)
+	case hall:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 750, 0.5), 1, between(rng, 4, 5.5)
+	case church:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 520, 0.4), 1, between(rng, 6.5, 10.5)
+	case careHome:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 2800, 0.4), 2+rng.IntN(3), between(rng, 2.6, 2.9)
+	case sportsHall:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 1100, 0.35), 1, between(rng, 6, 7.5)
+	case office:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 1800, 0.7), 2+rng.IntN(4), between(rng, 2.8, 3.3)
+	case shop:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 350, 0.6), 1+rng.IntN(2), between(rng, 3, 3.6)
+	case workshop:
+		s.areaM2, s.storeys, s.storeyHeightM = around(rng, 900, 0.6), 1, between(rng, 4, 5.5)
+	}
+	s.flat = s.use == block && s.year > 1957 && rng.Float64() < 0.6 ||
+		s.use >= school && s.use != church && s.year > 1955 && rng.Float64() < 0.7
+	s.attic = !s.flat && u.house() && rng.Float64() < 0.25
+	s.cellar = rng.Float64() < 0.55 && u != sportsHall && u != workshop
+	s.renew(rng)
+	s.fabric(rng)
+	s.air(rng)
+	s.system(rng)
+	s.listed = s.year < 1920 && rng.Float64() < 0.12 || u == church && s.year < 1946 && rng.Float64() < 0.6
+	s.facadeStays = s.listed || s.year < 1920 && rng.Float64() < 0.25
+	return s
+}
+
+// building is number i of n on the site.
+func (s *site) building(rng *rand.Rand, i, n int) asset {
+	a := s.asset
+	switch s.use {
+	case semi:
+		a.attached = 1
+	case terraced:
+		a.attached = 2
+		if i == 0 || i == n-1 {
+			a.attached = 1
+		}
+	case block:
+		if n > 2 && s.storeys < 7 {
+			a.attached = min(1, i) + min(1, n-1-i)
 		}
 	}
-	return building.Shop
+	a.floorAreaM2 = math.Round(s.areaM2 * between(rng, 0.95, 1.05))
+	a.size(s.aspect)
+	a.windowM2 = math.Round(a.floorAreaM2*windowShare(s.use)*between(rng, 0.85, 1.15)*10) / 10
+	a.windowM2 = min(a.windowM2, math.Round(a.wallM2*5)/10)
+	a.n50 = math.Round(a.n50*math.Exp(0.12*rng.NormFloat64())*10) / 10
+	switch {
+	case s.use == block:
+		a.dwellings = max(2, int(math.Round(a.floorAreaM2/72)))
+	case s.use.house():
+		a.dwellings = 1
+	}
+	if s.use.housing() {
+		a.occupants = max(1, int(math.Round(float64(a.dwellings)*between(rng, 1.6, 2.6))))
+		a.let = a.dwellings - int(float64(a.dwellings)*rng.Float64()*rng.Float64()*0.5)
+	}
+	a.name = a.title(rng)
+	a.heat(rng)
+	return a
 }
 
-func shape(r *rand.Rand, t *truth) {
-	height := 2.5
-	if t.year < 1919 {
-		height = 2.9
+// size works out areas from floor area, storeys and aspect ratio; houses share
+// their long side, blocks their short one.
+func (a *asset) size(aspect float64) {
+	const walls = 1.15 // outside over inside plan area
+	a.footprintM2 = math.Round(a.floorAreaM2 / float64(a.storeys) * walls)
+	short := math.Sqrt(a.footprintM2 / aspect)
+	long := aspect * short
+	a.perimeterM = math.Round(2*(short+long)*10) / 10
+	shared := long
+	if !a.use.house() {
+		shared = short
 	}
-	switch t.use {
-	case building.DetachedHouse, building.SemiDetachedHouse, building.TerracedHouse:
-		t.areaM2, t.storeys = between(r, 70, 165), choose(r, []float64{1, 1.5, 2, 2, 2, 2.5})
-		t.attachment = map[building.Use]building.Attachment{building.SemiDetachedHouse: building.OneSideShared, building.TerracedHouse: building.TwoSidesShared}[t.use]
-		if t.use == building.TerracedHouse && r.Float64() < 0.25 {
-			t.attachment = building.OneSideShared
+	exposed := 2*(short+long) - float64(a.attached)*shared
+	a.wallM2 = math.Round(exposed * float64(a.storeys) * (a.storeyHeightM + 0.3))
+	a.roofM2 = a.footprintM2
+	if a.attic {
+		a.roofM2 = math.Round(a.footprintM2 / math.Cos(40*math.Pi/180))
+	}
+}
+
+func windowShare(u use) float64 {
+	switch u {
+	case school, office, nursery:
+		return 0.2
+	case church:
+		return 0.12
+	case hall, sportsHall, workshop:
+		return 0.13
+	case shop:
+		return 0.18
+	}
+	return 0.155
+}
+
+func (a *asset) title(rng *rand.Rand) string {
+	name := a.street[:len(a.street)-len(kindOf(a.street))-1]
+	switch a.use {
+	case school:
+		return name + pick(rng, []string{" Primary School", " Secondary School", " School"})
+	case nursery:
+		return name + " Nursery"
+	case hall:
+		return name + " Hall"
+	case church:
+		return "St " + pick(rng, saints) + ", " + a.town.name
+	case careHome:
+		return name + " House Care Home"
+	case sportsHall:
+		return name + " Sports Hall"
+	case office:
+		return name + " House Offices"
+	case shop:
+		return "Shop, " + a.street
+	case workshop:
+		return name + " Depot"
+	case block:
+		return name + " Court"
+	}
+	return ""
+}
+
+func kindOf(street string) string {
+	for i := len(street) - 1; i > 0; i-- {
+		if street[i] == ' ' {
+			return street[i+1:]
 		}
-		t.dwellings = 1
-	case building.ApartmentBlock:
-		t.storeys = choose(r, []float64{2, 3, 3, 4, 4, 4, 5, 6, 8})
-		t.areaM2 = t.storeys * between(r, 140, 520)
-		t.attachment = choose(r, []building.Attachment{building.Detached, building.Detached, building.OneSideShared, building.TwoSidesShared})
-		t.dwellings = max(2, int(t.areaM2/between(r, 60, 85)))
-	case building.Church:
-		t.areaM2, t.storeys, height = between(r, 180, 900), 1, between(r, 6, 10.5)
-		t.year = min(t.year, 1978)
-	case building.Hall, building.SportsHall:
-		t.areaM2, t.storeys, height = between(r, 200, 1400), 1, between(r, 4, 7.5)
-	default:
-		t.storeys, height = choose(r, []float64{1, 2, 2, 3, 4}), 3.0
-		t.areaM2 = t.storeys * between(r, 250, 1500)
 	}
-	t.areaM2 = math.Round(t.areaM2*10) / 10
-	t.volumeM3 = math.Round(t.areaM2*height*spread(r, 0.04)*10) / 10
-	t.windowM2 = math.Round(t.areaM2*between(r, 0.12, 0.21)*10) / 10
-	t.occupants = max(1, int(t.areaM2/between(r, 30, 50)))
-	if t.use.IsHouse() {
-		t.occupants = 1 + r.IntN(5)
-	}
+	return ""
 }
 
-func fabricOf(r *rand.Rand, t *truth) {
-	old := t.year < 1949
-	switch {
-	case t.use == building.Church && old:
-		t.wall = choose(r, []string{"stone", "stone", "solid brick"})
-	case old:
-		t.wall = choose(r, []string{"solid brick", "solid brick", "solid brick", "half-timbered", "cavity brick"})
-	case t.year < 1979:
-		t.wall = choose(r, []string{"cavity brick", "cavity brick", "solid brick", "concrete panel", "hollow block"})
-	default:
-		t.wall = choose(r, []string{"insulated cavity brick", "insulated cavity brick", "timber frame", "aerated concrete"})
-	}
-	t.roof = "cold attic"
-	if !t.use.IsHouse() && t.year >= 1960 && r.Float64() < 0.6 {
-		t.roof = "flat"
-	} else if r.Float64() < 0.2 {
-		t.roof = "heated attic"
-	}
-	t.floor = choose(r, []string{"unheated cellar", "unheated cellar", "slab on ground", "suspended floor"})
-	base := map[string]float64{
-		"solid brick": 1.5, "stone": 1.5, "half-timbered": 1.7, "cavity brick": 1.4, "concrete panel": 1.0, "hollow block": 1.1,
-		"insulated cavity brick": 0.45, "timber frame": 0.35, "aerated concrete": 0.5,
-	}[t.wall]
-	t.wallU = math.Round(100*base*spread(r, 0.18)) / 100
-	t.windowYear = t.year
-	for t.windowYear < 2024 && 2026-t.windowYear > 35+r.IntN(20) {
-		t.windowYear += 30 + r.IntN(15)
-	}
-	t.windowYear = min(t.windowYear, 2024)
-	switch {
-	case t.windowYear < 1970:
-		t.glazing, t.windowU = "single", 4.8
-	case t.windowYear < 1995:
-		t.glazing, t.windowU = "double uncoated", 2.8
-	case t.windowYear < 2010:
-		t.glazing, t.windowU = "double coated", 1.5
-	default:
-		t.glazing, t.windowU = "triple", 0.95
-	}
-	t.windowU = math.Round(100*t.windowU*spread(r, 0.06)) / 100
-	if r.Float64() < 0.25 {
-		t.roofYear = min(2024, t.year+30+r.IntN(40))
-	}
-	leak := map[bool]float64{true: 8, false: 5}[t.use.IsHouse()] * math.Pow(0.988, float64(max(0, t.year-1950)))
-	t.n50 = math.Round(10*leak*spread(r, 0.3)) / 10
-	t.exposure = choose(r, []building.Exposure{building.NormalExposure, building.NormalExposure, building.NormalExposure, building.Sheltered, building.Exposed})
-	if t.town == "Ombermouth" && r.Float64() < 0.5 {
-		t.exposure = building.Exposed
-	}
-	t.listed = old && r.Float64() < 0.12 || t.use == building.Church && r.Float64() < 0.7
-	t.facadeStays = !t.listed && old && r.Float64() < 0.1
-}
+func between(rng *rand.Rand, low, high float64) float64 { return low + (high-low)*rng.Float64() }
 
-func systems(r *rand.Rand, t *truth) {
-	switch {
-	case t.year >= 2009:
-		t.ventilation = choose(r, []building.Ventilation{building.ExtractFan, building.BalancedRecovery, building.DemandControlled})
-	case t.use == building.ApartmentBlock && t.year >= 1955:
-		t.ventilation = choose(r, []building.Ventilation{building.PassiveStack, building.ExtractFan, building.Natural})
-	case !t.use.IsHousing() && t.year >= 1970:
-		t.ventilation = choose(r, []building.Ventilation{building.Balanced, building.ExtractFan, building.Natural})
-	default:
-		t.ventilation = building.Natural
-	}
-	s := choose(r, []struct{ heating, carrier string }{
-		{"boiler", "gas"}, {"condensing boiler", "gas"}, {"condensing boiler", "gas"}, {"district heating", "district heat"},
-		{"boiler", "oil"}, {"heat pump", "electricity"}, {"electric heating", "electricity"},
-	})
-	t.heating, t.carrier = s.heating, s.carrier
-	// Degree days of the starter climate's kind of place: about 3,100 K d.
-	envelope := t.volumeM3 / t.areaM2 / 2.6
-	ua := t.areaM2 * (0.75*t.wallU*envelope + 0.17*t.windowU + 0.35 + 0.33*2.6*0.45)
-	t.heatKWh = math.Round(ua * 3100 * 24 / 1000 / 0.85 * 0.8 * spread(r, 0.2))
+// around draws a log-normal value, cut at two and a half deviations.
+func around(rng *rand.Rand, median, sigma float64) float64 {
+	return median * math.Exp(sigma*max(-2.5, min(2.5, rng.NormFloat64())))
 }
