@@ -39,7 +39,7 @@ func (s *sheetBuilder) next(height float64) int {
 func (s *sheetBuilder) skip() { s.row++ }
 
 func (s *sheetBuilder) heading(text string, columns int) {
-	s.skip()
+	s.next(9)
 	s.next(24)
 	s.r.text(1, s.b.st.heading(), text)
 	for c := 2; c <= columns; c++ {

@@ -19,7 +19,7 @@ var kindMeanings = [building.NumKinds]string{
 
 // supply shows what the buildings run on.
 func (b *book) supply(o *opening) error {
-	o.breaks = append(o.breaks, o.row+1)
+	o.pageBreak()
 	t := &b.summary.Totals
 	o.title("What the buildings run on")
 	o.next(30)
@@ -76,7 +76,6 @@ func (b *book) firmness(o *opening) error {
 
 // cautions says in plain words what must not be forgotten.
 func (b *book) cautions(o *opening) error {
-	o.breaks = append(o.breaks, o.row+1)
 	o.title("Cautions")
 	o.sentence("This is a screening: it says which buildings to look at first, not what to build. Acting on it can hurt people and buildings where these are forgotten. Local codes and licensed practice decide.")
 	o.next(20)

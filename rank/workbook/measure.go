@@ -120,7 +120,7 @@ func (b *book) measureColumns(m *measureTerms) []column[measureRow] {
 	number("", saves, "Saving (share of delivered)", 11, percent, 6, func(x *measureRow) float64 {
 		return x.m.SavingKWh / (x.m.HeatBeforeKWh + x.m.FansBeforeKWh)
 	})
-	number("", saves, "Saving (kWh/(m² a))", 11, one, 4, func(x *measureRow) float64 { return x.m.SavingKWh / x.b.FloorAreaM2 })
+	number("", saves, "Saving (kWh/(m² a))", 13, one, 4, func(x *measureRow) float64 { return x.m.SavingKWh / x.b.FloorAreaM2 })
 	number("", saves, "CO₂ saved (kg/a)", 10, whole, 3, func(x *measureRow) float64 { return x.m.CO2Kg })
 
 	formula("cost", money, "Cost ("+cur+")", 12, whole)

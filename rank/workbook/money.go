@@ -113,7 +113,7 @@ type work struct {
 // Decimals of the values that formulas build on.
 const (
 	energyDecimals   = 3
-	quantityDecimals = 3
+	quantityDecimals = 6 // unit costs are large
 )
 
 func (t *terms) workOf(b *result.Building, m *result.Measure) work {

@@ -49,10 +49,13 @@ func (o *opening) span(from, to, style int) {
 	}
 }
 
+// pageBreak makes the next title the first line of a printed page.
+func (o *opening) pageBreak() { o.breaks = append(o.breaks, o.row+2) }
+
 func (o *opening) title(text string) { o.heading(text, gridColumns) }
 
 func (o *opening) sentence(text string) {
-	o.next(heightOf(fontSize, wrappedText{text, gridColumns * gridWidth}) + 3)
+	o.next(heightOf(fontSize, wrappedText{text, gridColumns * gridWidth}) + 1)
 	o.across(1, gridColumns, o.b.st.prose(), text)
 }
 
@@ -60,7 +63,7 @@ func (b *book) fillOverview(pg *page) error {
 	o := &opening{sheetBuilder: sheetBuilder{b: b, pg: pg, r: b.write(pg)}}
 	b.masthead(o)
 	b.highlights(o)
-	steps := []func(*opening) error{b.losses, b.savings, b.leads, b.supply, b.firmness, b.contents, b.cautions}
+	steps := []func(*opening) error{b.losses, b.savings, b.leads, b.supply, b.firmness, b.cautions, b.contents}
 	for _, step := range steps {
 		if err := step(o); err != nil {
 			return err
@@ -98,7 +101,7 @@ func (b *book) fillOverview(pg *page) error {
 
 func (b *book) masthead(o *opening) {
 	run, t := b.in.Run, &b.summary.Totals
-	o.next(36)
+	o.next(32)
 	o.r.text(1, b.st.title(), b.title)
 	o.next(16)
 	o.r.text(1, b.st.subtitle(), fmt.Sprintf("Portfolio %s, run %d of %s. Climate %s. Ranked by %s. kelvinrow %s.",
@@ -115,12 +118,16 @@ func (b *book) masthead(o *opening) {
 		}
 		formula += fixedText(t.CarrierKWh[i]/1000, 3) + "*" + b.terms.byWord[word].price
 	}
+	screened := "buildings screened"
+	if t.Failed > 0 {
+		screened += "; " + count(t.Failed) + " more could not be estimated"
+	}
 	tiles := []struct {
 		value   float64
 		formula string
 		caption string
 	}{
-		{float64(t.Buildings - t.Failed), "", "buildings screened"},
+		{float64(t.Buildings - t.Failed), "", screened},
 		{t.FloorAreaM2, "", "m² heated floor area"},
 		{perArea(t.NeedKWh, t.FloorAreaM2), "", "kWh/(m² a) heating need"},
 		{(t.DeliveredKWh + t.FansKWh) / 1000, "", "MWh/a delivered for heat, hot water and fans"},
@@ -138,7 +145,7 @@ func (b *book) masthead(o *opening) {
 		}
 		o.span(1+2*i, 2+2*i, number)
 	}
-	o.next(28)
+	o.next(26)
 	for i, tile := range tiles {
 		o.across(1+2*i, 2+2*i, caption, tile.caption)
 	}
@@ -147,14 +154,10 @@ func (b *book) masthead(o *opening) {
 // highlights are the sentences a board should take away.
 func (b *book) highlights(o *opening) {
 	o.title("What stands out")
-	t := &b.summary.Totals
 	for _, s := range b.outstanding() {
 		o.sentence("•  " + s)
 	}
-	o.sentence("•  This is a screening. Read the cautions at the end of this page before acting on a number.")
-	if t.Failed > 0 {
-		o.sentence(fmt.Sprintf("•  %s could not be estimated; the sheet Buildings says why.", buildings(t.Failed)))
-	}
+	o.sentence("•  This is a screening. Read the cautions below before acting on a number.")
 }
 
 func (b *book) outstanding() (out []string) {
@@ -216,7 +219,7 @@ func (b *book) pathsByLoss() []state.Path {
 func (b *book) losses(o *opening) error {
 	t := &b.summary.Totals
 	o.title("Where the heat goes")
-	top := o.next(20)
+	top := o.next(18)
 	o.across(1, 3, b.st.head(), "Path")
 	o.r.text(4, b.st.headRight(), "MWh/a")
 	o.r.text(5, b.st.headRight(), "Share")
@@ -244,7 +247,7 @@ func (b *book) losses(o *opening) error {
 		o.r.number(5, b.st.value(percent), ratio(x.v, total), 6)
 	}
 	sheet := quoteSheet(o.pg.name)
-	height := pixels(20 + ordinaryHeight*float64(o.row-top))
+	height := pixels(18 + ordinaryHeight*float64(o.row-top))
 	return b.bars(o.pg, cellName(6, top), bars{
 		title:      "Heat lost by path (MWh a year)",
 		alt:        "Bar chart of the heat lost by path, largest first; the numbers stand in the table to its left",
@@ -256,8 +259,7 @@ func (b *book) losses(o *opening) error {
 
 // savings shows each measure added up.
 func (b *book) savings(o *opening) error {
-	o.skip()
-	o.breaks = append(o.breaks, o.row+1)
+	o.pageBreak()
 	o.title("What each measure would save")
 	o.sentence("Each measure on its own, in every building where it applies and saves energy. Measures on the same building do not add up, and not every building is worth it: the sheets of the measures rank them. Money follows from the prices and costs on the sheet Assumptions.")
 	o.next(32)
@@ -331,18 +333,18 @@ func (o *opening) linkTo(col int, target string) {
 
 // leads shows the buildings that matter most over all measures.
 func (b *book) leads(o *opening) error {
-	o.breaks = append(o.breaks, o.row+1)
+	o.pageBreak()
 	leads := rank.Leading(b.in.Buildings, b.lists, b.in.Yardstick, leadCount)
 	o.title("The buildings that matter most")
 	o.sentence(fmt.Sprintf("Those among the first %d for most measures, by %s; of equals first the one where a single measure does most.", leadCount, b.in.Yardstick.Words()))
-	o.next(32)
+	o.next(28)
 	head := b.st.head()
 	o.across(1, 3, head, "Building")
 	o.across(4, 5, head, "Use, year built")
 	o.r.text(6, b.st.headRight(), "Floor area (m²)")
 	o.r.text(7, b.st.headRight(), "Measures, first "+itoa(leadCount))
 	o.across(8, 10, head, "Measure that does most")
-	o.r.text(11, b.st.headRight(), "Saving there (MWh/a)")
+	o.r.text(11, b.st.headRight(), "Saving (MWh/a)")
 	o.r.text(12, b.st.headRight(), "Inputs by default")
 	number := func(format string) int { return b.st.id(look{format: padded(format), align: "right"}) }
 	text, link := b.st.id(look{format: asText}), b.st.id(look{format: asText, link: true, bold: true})
@@ -351,7 +353,7 @@ func (b *book) leads(o *opening) error {
 	for i := range leads {
 		lead := &leads[i]
 		bl := &b.in.Buildings[lead.Index]
-		o.next(16)
+		o.next(ordinaryHeight)
 		o.across(1, 3, link, label(bl))
 		o.linkTo(1, b.buildings.target(lead.Index))
 		o.across(4, 5, text, useAndYear(bl))

@@ -71,7 +71,7 @@ func (b *book) setPrint(pg *page, l layout) error {
 	if err := b.f.SetSheetProps(pg.name, &excelize.SheetPropsOptions{FitToPage: &yes}); err != nil {
 		return err
 	}
-	side, end, margin := 0.4, 0.6, 0.3
+	side, end, margin := 0.4, 0.55, 0.3
 	if err := b.f.SetPageMargins(pg.name, &excelize.PageLayoutMarginsOptions{
 		Left: &side, Right: &side, Top: &side, Bottom: &end, Header: &margin, Footer: &margin,
 	}); err != nil {

@@ -84,8 +84,11 @@ func (n namer) sheet(candidates ...string) string {
 		if c == "" {
 			continue
 		}
+		if strings.EqualFold(c, "History") {
+			c += " sheet" // Excel keeps the name for itself
+		}
 		last = c
-		if utf16Len(c) <= maxSheetName && !strings.EqualFold(c, "History") && n.take(c) {
+		if utf16Len(c) <= maxSheetName && n.take(c) {
 			return c
 		}
 	}

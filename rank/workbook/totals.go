@@ -58,7 +58,7 @@ func (b *book) addTotals() error {
 			"Each measure on its own, in every building where it applies and saves energy, whatever it costs. Measures on the same building do not add up.",
 			"A measure that changes the energy carrier saves all of the old one and adds the new one, which then stands with a minus.",
 		},
-		frozen: 1, rows: len(b.terms.measures), table: "totals",
+		frozen: 1, wide: 2, rows: len(b.terms.measures), table: "totals",
 		columns: b.totalColumns(),
 	}
 	l.load = func(i int, x *totalRow) { *x = b.total(i) }
