@@ -228,7 +228,7 @@ func (a *asset) heat(rng *rand.Rand) {
 	loss := h * meanDegreeDays * 24 / 1000
 	need := loss - min(0.6*loss, 32*a.floorAreaM2)
 	perM2 := need / a.floorAreaM2
-	need *= 1 - 0.4*perM2/(perM2+120)
+	need *= 1 - 0.3*perM2/(perM2+150)
 	switch a.use {
 	case church:
 		need *= 0.45 // heated for services only
