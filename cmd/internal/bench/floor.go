@@ -2,45 +2,41 @@ package main
 
 import (
 	"archive/zip"
-	"compress/flate"
 	"context"
 	"fmt"
 	"io"
 	"os"
 	"strings"
-	"sync/atomic"
 	"time"
 
+	"github.com/klauspost/compress/flate"
+
 	"kelvinrow/cmd/internal/pipeline"
+	"kelvinrow/ingest"
 )
 
-// watch samples this process's resident memory and returns a function that
-// gives the peak in MB since it was last asked.
-func watch() func() float64 {
-	var peak atomic.Int64
-	sample := func() {
-		b, err := os.ReadFile("/proc/self/statm")
-		if err != nil {
-			return // no /proc: memory is not reported
-		}
-		var size, resident int64
-		if _, err := fmt.Sscan(string(b), &size, &resident); err == nil && resident > peak.Load() {
-			peak.Store(resident)
-		}
+// peakMB returns the most memory this process had resident since it was last
+// asked, by the kernel's own high-water mark; 0 where the system keeps none.
+// Postgres runs in processes of its own and is not counted.
+func peakMB() float64 {
+	status, err := os.ReadFile("/proc/self/status")
+	if err != nil {
+		return 0
 	}
-	go func() {
-		for range time.Tick(20 * time.Millisecond) {
-			sample()
-		}
-	}()
-	return func() float64 {
-		sample()
-		return float64(peak.Swap(0)) * float64(os.Getpagesize()) / 1e6
+	_, rest, _ := strings.Cut(string(status), "VmHWM:")
+	var kB float64
+	if _, err := fmt.Sscan(rest, &kB); err != nil {
+		return 0
 	}
+	// 5 sets the mark back to what is resident now. Where that is refused the
+	// mark stays that of the whole run.
+	_ = os.WriteFile("/proc/self/clear_refs", []byte("5"), 0)
+	return kB / 1024
 }
 
-// floors measures the least that the same bytes cost.
-func floors(ctx context.Context, s *pipeline.Session, input, output string, floor map[string]float64) error {
+// floors measures the least that the same bytes cost, and reading alone, with
+// all recognition and checks but no store.
+func floors(ctx context.Context, s *pipeline.Session, input, output string, f *figures) error {
 	began := time.Now()
 	if err := parts(input, func(name string, r io.Reader) error {
 		if !strings.HasPrefix(name, "xl/worksheets/") && name != "xl/sharedStrings.xml" {
@@ -51,13 +47,19 @@ func floors(ctx context.Context, s *pipeline.Session, input, output string, floo
 	}); err != nil {
 		return err
 	}
-	floor["unzip"] = time.Since(began).Seconds()
+	f.Floor["unzip"] = time.Since(began).Seconds()
+
+	began = time.Now()
+	if _, err := ingest.Inspect(ctx, input, ingest.Options{Today: began.Format("2006-01-02")}); err != nil {
+		return err
+	}
+	f.Seconds["read alone"] = time.Since(began).Seconds()
 
 	seconds, err := s.Store.CopyFloor(ctx, s.Portfolio)
 	if err != nil {
 		return err
 	}
-	floor["COPY"] = seconds
+	f.Floor["COPY"] = seconds
 
 	// Deflate what is unzipped first, so that only deflating is timed.
 	var total time.Duration
@@ -67,7 +69,7 @@ func floors(ctx context.Context, s *pipeline.Session, input, output string, floo
 			return err
 		}
 		began := time.Now()
-		w, err := flate.NewWriter(io.Discard, flate.DefaultCompression)
+		w, err := flate.NewWriter(io.Discard, 3) // the workbook's own level
 		if err != nil {
 			return err
 		}
@@ -80,7 +82,7 @@ func floors(ctx context.Context, s *pipeline.Session, input, output string, floo
 		total += time.Since(began)
 		return nil
 	})
-	floor["deflate"] = total.Seconds()
+	f.Floor["deflate"] = total.Seconds()
 	return err
 }
 

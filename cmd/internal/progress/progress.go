@@ -28,6 +28,7 @@ type Progress struct {
 	rows  int
 	drawn time.Time
 	dirty bool // a line stands on the terminal
+	seen  func(stage string)
 }
 
 // New shows progress on w if it is a terminal and quiet is not set.
@@ -43,6 +44,9 @@ func New(w io.Writer, quiet bool) *Progress {
 	return &Progress{w: w, width: width}
 }
 
+// Watch shows nothing and calls seen as each stage begins: for measuring stages.
+func Watch(seen func(stage string)) *Progress { return &Progress{seen: seen} }
+
 // Stage begins a stage of total steps; 0 when their number is not known.
 func (p *Progress) Stage(name string, total int) {
 	if p == nil {
@@ -50,6 +54,9 @@ func (p *Progress) Stage(name string, total int) {
 	}
 	p.mu.Lock()
 	defer p.mu.Unlock()
+	if p.seen != nil {
+		p.seen(name)
+	}
 	p.stage, p.total, p.done, p.rows = name, total, 0, 0
 	p.draw(true)
 }
@@ -90,7 +97,7 @@ func (p *Progress) Done() {
 }
 
 func (p *Progress) draw(now bool) {
-	if !now && time.Since(p.drawn) < interval {
+	if p.w == nil || !now && time.Since(p.drawn) < interval {
 		return
 	}
 	p.drawn = time.Now()
@@ -103,8 +110,9 @@ func (p *Progress) draw(now bool) {
 	if p.rows > 0 {
 		line += fmt.Sprintf(", %d rows", p.rows)
 	}
-	if len(line) > p.width-1 {
-		line = line[:p.width-1]
+	// A line that wraps could not be taken back.
+	if r := []rune(line); len(r) > p.width-1 {
+		line = string(r[:p.width-1])
 	}
 	fmt.Fprintf(p.w, "\r%-*s", p.width-1, line)
 	p.dirty = true
