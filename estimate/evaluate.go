@@ -88,9 +88,10 @@ func (b *Basis) run(s *state.State, o *outcome) {
 	o.money = o.heatKWh*heat.PricePerKWh + o.fansKWh*power.PricePerKWh
 }
 
-// measured is one measure carried out on one building.
+// measured is one measure carried out on one building. Its memory is used again
+// for the next.
 type measured struct {
-	state  *state.State
+	state  state.State
 	out    outcome
 	result result.Measure
 }
@@ -99,12 +100,11 @@ type measured struct {
 func (b *Basis) try(mm *measure.Measure, m *Model, before *outcome, after *measured) {
 	r := &after.result
 	*r = result.Measure{}
-	effect, why := mm.Apply(m.State, &m.Facts)
+	effect, why := mm.Apply(m.State, &m.Facts, &after.state)
 	if why != "" {
 		r.Reason = why
 		return
 	}
-	after.state = effect.State
 	b.run(effect.State, &after.out)
 	cost := mm.Cost(effect.Quantity)
 	upkeep := mm.Terms.UpkeepShare * cost

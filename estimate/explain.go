@@ -39,8 +39,8 @@ func (b *Basis) Explain(bl *building.Building) (*Explanation, error) {
 	for k, share := range sum.InputShare {
 		e.InputShare[building.Kind(k).String()] = share
 	}
-	var after measured
 	for i := range b.Measures {
+		var after measured // the document points into it
 		mm := &b.Measures[i]
 		b.try(mm, m, &base, &after)
 		e.Measures[i] = b.measureDoc(mm.Terms.Key, mm.Terms.Label, mm.Terms.Unit, &after)
@@ -67,8 +67,6 @@ func (b *Basis) measureDoc(key, label, unit string, a *measured) MeasureDoc {
 	if !r.Applies {
 		return d
 	}
-	kept := *r // the caller reuses a
-	r = &kept
 	d.Quantity, d.Unit = &r.Quantity, unit
 	if r.CompanionQuantity > 0 {
 		d.CompanionM3H = &r.CompanionQuantity
@@ -77,7 +75,7 @@ func (b *Basis) measureDoc(key, label, unit string, a *measured) MeasureDoc {
 	d.SavingKWh, d.NeedSavingKWh = &r.SavingKWh, &r.NeedSavingKWh
 	d.CO2Kg, d.MoneyPerYear, d.NPV = &r.CO2Kg, &r.MoneyPerYear, &r.NPV
 	d.PaybackYears, d.CostOfSavedKWh = finite(r.PaybackYears), finite(r.CostOfSavedKWh)
-	s := b.stateDoc(a.state, &a.out)
+	s := b.stateDoc(&a.state, &a.out)
 	d.State = &s
 	return d
 }

@@ -90,10 +90,11 @@ type job struct {
 
 func (j *job) target(name string) float64 { return j.t.Target[name] }
 
-// Apply returns the state after the measure, or why it does not apply. The
-// given state is not changed.
-func (m *Measure) Apply(s *state.State, f *Facts) (Effect, string) {
-	j := job{s: s.Clone(), f: f, t: m.Terms}
+// Apply makes into the state after the measure, or says why it does not apply.
+// The given state is not changed; the effect's state is into.
+func (m *Measure) Apply(s *state.State, f *Facts, into *state.State) (Effect, string) {
+	s.CopyInto(into)
+	j := job{s: into, f: f, t: m.Terms}
 	if why := m.apply(&j); why != "" {
 		return Effect{}, why
 	}

@@ -4,8 +4,6 @@
 package state
 
 import (
-	"slices"
-
 	"kelvinrow/estimate/building"
 	"kelvinrow/estimate/climate"
 	"kelvinrow/estimate/fabric"
@@ -110,11 +108,13 @@ type State struct {
 	System          System
 }
 
-// Clone returns a copy whose elements can be changed without changing s.
-func (s *State) Clone() *State {
-	c := *s
-	c.Elements = slices.Clone(s.Elements)
-	return &c
+// CopyInto makes into a copy of s whose elements can be changed without changing
+// s. It reuses what memory into has: a run copies a state for every measure of
+// every building.
+func (s *State) CopyInto(into *State) {
+	elements := append(into.Elements[:0], s.Elements...)
+	*into = *s
+	into.Elements = elements
 }
 
 // EnvelopeM2 is the envelope area, the area thermal bridges are lumped over.
