@@ -408,3 +408,30 @@ func TestInterruptLeavesTheStoreAsItWas(t *testing.T) {
 		u.stopped()
 	}
 }
+
+// TestRegisters screens open building registers that nobody here wrote.
+func TestRegisters(t *testing.T) {
+	t.Parallel()
+	u := newUser(t)
+	for _, c := range []struct {
+		file      string
+		status    int
+		buildings string
+	}{
+		{"county-house-sales.csv", 0, "21 420 estimated"}, // 21,597 sales of 21,420 houses
+		{"city-a-energy-benchmarking.csv", 0, " estimated"},
+		{"uci-energy-efficiency.csv", 1, "no buildings"}, // headers that say nothing
+	} {
+		path, err := filepath.Abs(filepath.Join("../../../shared/data/registers", c.file))
+		if err != nil {
+			t.Fatal(err)
+		}
+		if _, err := os.Stat(path); err != nil {
+			t.Skipf("open data is not here: %v", err)
+		}
+		out := u.must(c.status, "screen", path, "-o", "r.xlsx", "--portfolio", c.file, "--top", "50")
+		if !strings.Contains(out, c.buildings) {
+			t.Errorf("%s: the summary does not say %q:\n%s", c.file, c.buildings, out)
+		}
+	}
+}

@@ -13,8 +13,9 @@ import (
 )
 
 // SaveRun stores a run and gives it its number: the next of its portfolio. It is
-// there whole or not at all.
-func (s *Store) SaveRun(ctx context.Context, run *result.Run, buildings []result.Building) error {
+// there whole or not at all: publish, if not nil, is called when everything is
+// written and the number is known, and its error undoes the run.
+func (s *Store) SaveRun(ctx context.Context, run *result.Run, buildings []result.Building, publish func() error) error {
 	return s.within(ctx, run.Portfolio, false, func(tx pgx.Tx) error {
 		// The portfolio's row is the lock under which numbers are given.
 		if _, err := tx.Exec(ctx, "select from kelvinrow.portfolio where portfolio = $1 for update", run.Portfolio); err != nil {
@@ -41,7 +42,10 @@ func (s *Store) SaveRun(ctx context.Context, run *result.Run, buildings []result
 			return err
 		}
 		run.Number = number
-		return nil
+		if publish == nil {
+			return nil
+		}
+		return publish()
 	})
 }
 

@@ -2,6 +2,7 @@ package store
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"math"
 	"os"
@@ -283,7 +284,7 @@ func TestRunComesBackExactly(t *testing.T) {
 	full.Measures[1].PaybackYears = math.Inf(1)
 	failed := result.Building{ID: "A", Failed: "no size"}
 	stored := []result.Building{failed, full}
-	must(t, s.SaveRun(t.Context(), run, stored))
+	must(t, s.SaveRun(t.Context(), run, stored, nil))
 	if run.Number != 1 {
 		t.Errorf("run %d, want 1", run.Number)
 	}
@@ -295,7 +296,11 @@ func TestRunComesBackExactly(t *testing.T) {
 	if d := cmp.Diff(stored, buildings); d != "" {
 		t.Errorf("buildings differ (-stored +read):\n%s", d)
 	}
-	must(t, s.SaveRun(t.Context(), run, stored))
+	must(t, s.SaveRun(t.Context(), run, stored, nil))
+	unpublished := errors.New("no workbook")
+	if err := s.SaveRun(t.Context(), run, stored, func() error { return unpublished }); !errors.Is(err, unpublished) {
+		t.Errorf("a run that could not be published: %v", err)
+	}
 	runs, err := s.Runs(t.Context(), "p")
 	must(t, err)
 	if len(runs) != 2 || runs[1].Number != 2 {
@@ -334,7 +339,7 @@ func TestPortfoliosAreKeptApart(t *testing.T) {
 	load(t, held, "c", "c.csv", 3, area("C", 2, 300))
 	want(t, all(t, held, "c"), map[string]float64{"C": 300})
 	run := &result.Run{Portfolio: "c", Measures: []string{}}
-	must(t, held.SaveRun(t.Context(), run, []result.Building{{ID: "C"}}))
+	must(t, held.SaveRun(t.Context(), run, []result.Building{{ID: "C"}}, nil))
 	tx, err := held.begin(t.Context(), "c", true)
 	must(t, err)
 	defer tx.Rollback(t.Context())

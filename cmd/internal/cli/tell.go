@@ -122,7 +122,7 @@ func (a *app) tellRank(o *pipeline.RankOutcome) {
 	s := &o.Summary
 	fmt.Fprintf(a.out, "Buildings    %s estimated in climate %s", count(s.Buildings-s.Failed), o.Run.Climate)
 	if s.Failed > 0 {
-		fmt.Fprintf(a.out, ", %s could not be (see Data issues)", count(s.Failed))
+		fmt.Fprintf(a.out, ", %s could not be (the sheet Buildings says why)", count(s.Failed))
 	}
 	fmt.Fprintln(a.out)
 	if s.FloorAreaM2 == 0 {

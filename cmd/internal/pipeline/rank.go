@@ -6,7 +6,6 @@ import (
 	"encoding/hex"
 	"fmt"
 	"io"
-	"os"
 	"path/filepath"
 	"time"
 
@@ -37,7 +36,8 @@ type RankOutcome struct {
 
 // Rank estimates all buildings of the portfolio, ranks them, stores the run and
 // writes the workbook. The run is stored only when the workbook is whole, and
-// the workbook takes its place only when the run is stored. Findings are those
+// the workbook takes its place only when the run is stored: stopped at any time,
+// a command leaves neither. Findings are those
 // of the command itself; what earlier loads found comes from the store.
 func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.Finding) (*RankOutcome, error) {
 	basis, err := s.basis()
@@ -80,24 +80,28 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 		return nil, err
 	}
 
-	began = time.Now()
-	s.Progress.Stage("storing the run", 0)
-	if err := s.Store.SaveRun(ctx, run, buildings); err != nil {
-		return nil, fmt.Errorf("store the run: %w", err)
-	}
-	s.Timings.Save = time.Since(began)
-
-	began = time.Now()
-	s.Progress.Stage("writing "+filepath.Base(opt.Out), 0)
 	in := &workbook.Input{
 		Run: run, Buildings: buildings, Findings: union(stored, findings), Set: basis.Set,
 		Climate: basis.Climate, Top: opt.Top, Yardstick: opt.Yardstick, Title: opt.Title,
 	}
-	err = WriteWhole(opt.Out, func(w io.Writer) error { return workbook.Write(ctx, w, in) })
+	var file *staged
+	defer func() { file.discard() }()
+	began = time.Now()
+	s.Progress.Stage("storing the run", 0)
+	err = s.Store.SaveRun(ctx, run, buildings, func() (err error) {
+		s.Timings.Save = time.Since(began)
+		s.Progress.Stage("writing "+filepath.Base(opt.Out), 0)
+		began = time.Now()
+		file, err = stage(opt.Out, func(w io.Writer) error { return workbook.Write(ctx, w, in) })
+		s.Timings.Write = time.Since(began)
+		return err
+	})
 	if err != nil {
-		return nil, fmt.Errorf("run %d is stored, but its workbook is not written: %w", run.Number, err)
+		return nil, fmt.Errorf("store the run and write %s: %w", opt.Out, err)
 	}
-	s.Timings.Write = time.Since(began)
+	if err := file.publish(); err != nil {
+		return nil, fmt.Errorf("run %d is stored, but its workbook cannot take its place: %w", run.Number, err)
+	}
 	s.Progress.Done()
 	return &RankOutcome{Run: run, Buildings: buildings, Summary: summary, Basis: basis, Out: opt.Out}, nil
 }
@@ -151,27 +155,6 @@ func union(stored, own []finding.Finding) []finding.Finding {
 	}
 	finding.Sort(stored)
 	return stored
-}
-
-// WriteWhole writes a file so that it is there whole or not at all.
-func WriteWhole(path string, write func(io.Writer) error) error {
-	f, err := os.CreateTemp(filepath.Dir(path), ".kelvinrow-*")
-	if err != nil {
-		return err
-	}
-	defer os.Remove(f.Name())
-	if err := write(f); err != nil {
-		f.Close()
-		return err
-	}
-	if err := f.Chmod(0o644); err != nil {
-		f.Close()
-		return err
-	}
-	if err := f.Close(); err != nil {
-		return err
-	}
-	return os.Rename(f.Name(), path)
 }
 
 // Explain says everything about one building.
