@@ -122,6 +122,10 @@ func (r *rows) number(col, style int, v float64, decimals int) {
 
 func (r *rows) int(col, style, v int) { r.number(col, style, float64(v), 0) }
 
+// cachedDecimals is to how many decimals the value of a formula is written: a
+// millionth of a unit of money. More digits would be a third of the file.
+const cachedDecimals = 6
+
 // formula writes a formula, already escaped and without "=", in which # stands
 // for the row, and the number it leads to.
 func (r *rows) formula(col, style int, f string, v float64) {
@@ -129,7 +133,7 @@ func (r *rows) formula(col, style int, f string, v float64) {
 	r.buf = append(r.buf, `"><f>`...)
 	r.appendFormula(f)
 	r.buf = append(r.buf, `</f><v>`...)
-	r.buf = strconv.AppendFloat(r.buf, v, 'g', -1, 64)
+	r.buf = appendFixed(r.buf, v, cachedDecimals)
 	r.buf = append(r.buf, `</v></c>`...)
 }
 

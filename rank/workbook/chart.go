@@ -6,18 +6,20 @@ import "github.com/xuri/excelize/v2"
 // number, so that it needs neither a value axis nor colours to be read.
 type bars struct {
 	title, alt         string
+	name               string // cell that names the series
 	categories, values string // ranges
 	color, format      string
 	width, height      int // pixels
 }
 
+// The widths of the columns below it must be set before.
 func (b *book) bars(pg *page, cell string, c bars) error {
 	gap := uint(45)
 	no := false
 	return b.f.AddChart(pg.name, cell, &excelize.Chart{
 		Type: excelize.Bar,
 		Series: []excelize.ChartSeries{{
-			Name: c.title, Categories: c.categories, Values: c.values,
+			Name: c.name, Categories: c.categories, Values: c.values,
 			Fill:              excelize.Fill{Type: "pattern", Pattern: 1, Color: []string{c.color}},
 			DataLabelPosition: excelize.ChartDataLabelsPositionOutsideEnd,
 			DataLabel:         excelize.ChartDataLabel{Font: excelize.Font{Family: font, Size: 9, Color: ink}},
@@ -34,7 +36,7 @@ func (b *book) bars(pg *page, cell string, c bars) error {
 		Border:     excelize.LineOptions{Type: excelize.LineNone},
 		Dimension:  excelize.ChartDimension{Width: uint(c.width), Height: uint(c.height)},
 		Format: excelize.GraphicOptions{
-			AltText: c.alt, Positioning: "oneCell", OffsetX: 6, OffsetY: 4,
+			AltText: c.alt, OffsetX: 6, OffsetY: 4,
 		},
 	})
 }

@@ -22,7 +22,6 @@ type column[T any] struct {
 
 // list is a sheet, or several of them, with one real table.
 type list[T any] struct {
-	sheet   []string // candidates for the name
 	about   string
 	tab     string // colour
 	title   string

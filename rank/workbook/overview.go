@@ -61,6 +61,13 @@ func (o *opening) sentence(text string) {
 
 func (b *book) fillOverview(pg *page) error {
 	o := &opening{sheetBuilder: sheetBuilder{b: b, pg: pg, r: b.write(pg)}}
+	widths := make([]float64, gridColumns)
+	for i := range widths {
+		widths[i] = gridWidth
+	}
+	if err := b.widths(pg, widths...); err != nil {
+		return err
+	}
 	b.masthead(o)
 	b.highlights(o)
 	steps := []func(*opening) error{b.losses, b.savings, b.leads, b.supply, b.firmness, b.cautions, b.contents}
@@ -88,13 +95,6 @@ func (b *book) fillOverview(pg *page) error {
 		if err := b.f.InsertPageBreak(pg.name, cellName(1, row)); err != nil {
 			return err
 		}
-	}
-	widths := make([]float64, gridColumns)
-	for i := range widths {
-		widths[i] = gridWidth
-	}
-	if err := b.widths(pg, widths...); err != nil {
-		return err
 	}
 	return b.setPrint(pg, layout{area: "A1:" + cellName(gridColumns, o.row)})
 }
@@ -251,6 +251,7 @@ func (b *book) losses(o *opening) error {
 	return b.bars(o.pg, cellName(6, top), bars{
 		title:      "Heat lost by path (MWh a year)",
 		alt:        "Bar chart of the heat lost by path, largest first; the numbers stand in the table to its left",
+		name:       sheet + "!" + absolute(cellName(4, top)),
 		categories: sheet + "!" + absolute(cellName(1, first)) + ":" + absolute(cellName(1, last)),
 		values:     sheet + "!" + absolute(cellName(4, first)) + ":" + absolute(cellName(4, last)),
 		color:      accent, format: whole, width: 7*gridPixels - 12, height: height,
@@ -305,15 +306,16 @@ func (b *book) savings(o *opening) error {
 	span := func(col int) string {
 		return sheet + "!" + absolute(cellName(col, first)) + ":" + absolute(cellName(col, last))
 	}
+	head := func(col int) string { return sheet + "!" + absolute(cellName(col, first-1)) }
 	if err := b.bars(o.pg, cellName(1, at), bars{
 		title: "Saving (MWh a year)", alt: "Bar chart of the saving of each measure; the numbers stand in the table above",
-		categories: span(1), values: span(5), color: accent, format: whole, width: 6*gridPixels - 8, height: height,
+		name: head(5), categories: span(1), values: span(5), color: accent, format: whole, width: 6*gridPixels - 8, height: height,
 	}); err != nil {
 		return err
 	}
 	if err := b.bars(o.pg, cellName(7, at), bars{
 		title: "Cost (thousand " + b.currency() + ")", alt: "Bar chart of the cost of each measure; the numbers stand in the table above",
-		categories: span(1), values: span(8), color: ochre, format: whole, width: 6*gridPixels - 8, height: height,
+		name: head(8), categories: span(1), values: span(8), color: ochre, format: whole, width: 6*gridPixels - 8, height: height,
 	}); err != nil {
 		return err
 	}

@@ -49,7 +49,8 @@ func (b *book) addPage(name, about string, tab string) (*page, error) {
 	if err := b.f.SetSheetView(name, 0, &excelize.ViewOptions{ShowGridLines: &no}); err != nil {
 		return nil, err
 	}
-	return pg, b.f.SetSheetProps(name, &excelize.SheetPropsOptions{TabColorRGB: &tab})
+	opaque := "FF" + tab
+	return pg, b.f.SetSheetProps(name, &excelize.SheetPropsOptions{TabColorRGB: &opaque})
 }
 
 // write gives a row writer for the top of a page.

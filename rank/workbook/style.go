@@ -159,7 +159,7 @@ func (s *styles) value(format string) int {
 func padded(format string) string {
 	switch format {
 	case "", asText:
-		return `General_);-General_);General_);@_)`
+		return `@_)`
 	case general:
 		return `General_)`
 	}

@@ -469,3 +469,62 @@ func BenchmarkWrite(b *testing.B) {
 		})
 	}
 }
+
+// Charts stand on more than one cell, name their series by a cell, and draw
+// cells that hold what they say.
+func TestCharts(t *testing.T) {
+	t.Parallel()
+	o := open(t, written(t, portfolio(t, 40)))
+	type anchor struct {
+		Col    int `xml:"col"`
+		ColOff int `xml:"colOff"`
+		Row    int `xml:"row"`
+		RowOff int `xml:"rowOff"`
+	}
+	var anchors struct {
+		A []struct {
+			From anchor `xml:"from"`
+			To   anchor `xml:"to"`
+			Text struct {
+				Alt string `xml:"descr,attr"`
+			} `xml:"graphicFrame>nvGraphicFramePr>cNvPr"`
+		} `xml:"twoCellAnchor"`
+	}
+	o.decode(t, "xl/drawings/drawing1.xml", &anchors)
+	if len(anchors.A) != 3 {
+		t.Fatalf("%d charts, want 3", len(anchors.A))
+	}
+	const cell = 96 * 9525 // an inch in the drawing's units: no cell there is larger
+	for i, a := range anchors.A {
+		if a.To.Col-a.From.Col < 4 || a.To.Row-a.From.Row < 8 || a.To.ColOff > cell || a.To.RowOff > cell {
+			t.Errorf("chart %d stands from %+v to %+v", i+1, a.From, a.To)
+		}
+		if a.Text.Alt == "" {
+			t.Errorf("chart %d has no text for those who cannot see it", i+1)
+		}
+	}
+	for n := 1; n <= 3; n++ {
+		var c struct {
+			Name       string `xml:"chart>plotArea>barChart>ser>tx>strRef>f"`
+			Categories string `xml:"chart>plotArea>barChart>ser>cat>strRef>f"`
+			Values     string `xml:"chart>plotArea>barChart>ser>val>numRef>f"`
+		}
+		o.decode(t, fmt.Sprintf("xl/charts/chart%d.xml", n), &c)
+		if s, at := follow(c.Name); o.cells[s][at].value == "" {
+			t.Errorf("chart %d is named by %q, which is empty", n, c.Name)
+		}
+		for _, ref := range []string{c.Categories, c.Values} {
+			s, span := follow(ref)
+			from, to, _ := strings.Cut(span, ":")
+			first, last := atoi(strings.TrimLeft(from, "ABCDEFGHIJKL")), atoi(strings.TrimLeft(to, "ABCDEFGHIJKL"))
+			if last-first < 8 {
+				t.Errorf("chart %d draws %s", n, ref)
+			}
+			for row := first; row <= last; row++ {
+				if v := o.cells[s][from[:1]+itoa(row)].value; v == "" {
+					t.Errorf("chart %d draws %s, where row %d is empty", n, ref, row)
+				}
+			}
+		}
+	}
+}
