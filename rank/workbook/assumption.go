@@ -100,7 +100,7 @@ func (s *sheetBuilder) input(col int, format string, v float64, name string) {
 }
 
 func (b *book) addAssumptions() error {
-	pg, err := b.addPage(assumptionsSheet, "Prices, costs, interest, conditions of use and climate, with their sources", ochre)
+	pg, err := b.addPage(assumptionsSheet, "prices, costs, interest, uses, climate", ochre)
 	if err != nil {
 		return err
 	}

@@ -123,15 +123,31 @@ func (b *book) concerned() []int {
 	return n
 }
 
-// contents lists the sheets with links.
+// contents lists the sheets with links: the measures to the left, the rest to
+// the right.
 func (b *book) contents(o *opening) error {
 	o.title("Contents")
 	o.contents = o.row
+	var sides [2][]*page
 	for _, pg := range b.pages[1:] {
+		side := 1
+		if pg.measure {
+			side = 0
+		}
+		sides[side] = append(sides[side], pg)
+	}
+	const half = gridColumns / 2
+	for i := range max(len(sides[0]), len(sides[1])) {
 		o.next(ordinaryHeight)
-		o.across(1, 3, b.st.textLink(), pg.name)
-		o.linkTo(1, quoteSheet(pg.name)+"!A1")
-		o.across(4, gridColumns, b.st.words(), pg.about)
+		for side, pages := range sides {
+			if i >= len(pages) {
+				continue
+			}
+			col := 1 + side*half
+			o.across(col, col+2, b.st.textLink(), pages[i].name)
+			o.linkTo(col, quoteSheet(pages[i].name)+"!A1")
+			o.across(col+3, col+half-1, b.st.words(), pages[i].about)
+		}
 	}
 	return nil
 }

@@ -41,7 +41,7 @@ func (b *book) addBuildings() error {
 		m.sheet = s.sheets[0]
 	}
 	l := &list[buildingRow]{
-		about: "Every building: what is known, what it loses, what it uses",
+		about: "every building, its losses and its use",
 		tab:   muted, title: "Buildings",
 		notes: []string{
 			fmt.Sprintf("%s, %s could not be estimated. Energy is calculated for the building as it is, in climate %s. U-values are area-weighted.",

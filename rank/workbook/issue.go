@@ -22,7 +22,7 @@ func (b *book) addIssues() error {
 	s := b.planFixed(issuesSheet, len(findings))
 	by := b.bySeverity()
 	l := &list[finding.Finding]{
-		about: "What was wrong or doubtful in the data: " + counted(by[finding.Error], "error") + ", " +
+		about: counted(by[finding.Error], "error") + ", " +
 			counted(by[finding.Warning], "warning") + ", " + counted(by[finding.Note], "note"),
 		tab: ochre, title: "Data issues",
 		notes: []string{

@@ -23,6 +23,7 @@ type column[T any] struct {
 // list is a sheet, or several of them, with one real table.
 type list[T any] struct {
 	about   string
+	measure bool   // ranks a measure
 	tab     string // colour
 	title   string
 	notes   []string // two lines below the title
@@ -90,6 +91,7 @@ func addListPage[T any](b *book, sheet string, l *list[T], from, to int) error {
 	if err != nil {
 		return err
 	}
+	pg.measure = l.measure
 	last := listHead + max(1, to-from)
 	r := b.write(pg)
 	writeListTop(b, r, l)

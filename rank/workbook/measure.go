@@ -36,8 +36,8 @@ func (b *book) addMeasure(i int) error {
 		shown = fmt.Sprintf("The best %s of %s", count(b.shown[i]), buildings(total.Applies))
 	}
 	l := &list[measureRow]{
-		about: "Ranked: " + buildings(total.Applies) + " where it applies and saves energy",
-		tab:   accent, title: m.Label,
+		about: "ranks " + buildings(total.Applies), measure: true,
+		tab: accent, title: m.Label,
 		notes: []string{
 			fmt.Sprintf("%s, ranked by %s. It does not apply to %s others and would save nothing in %s.",
 				shown, b.in.Yardstick.Words(), count(total.Excluded), count(total.NoSaving)),

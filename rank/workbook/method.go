@@ -50,7 +50,7 @@ var method = []section{
 }
 
 func (b *book) addMethod() error {
-	pg, err := b.addPage(methodSheet, "How the numbers are made, their limits, and every caution in full", muted)
+	pg, err := b.addPage(methodSheet, "how it is made, limits, cautions in full", muted)
 	if err != nil {
 		return err
 	}

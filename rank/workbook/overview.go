@@ -247,7 +247,7 @@ func (b *book) losses(o *opening) error {
 		o.r.number(5, b.st.value(percent), ratio(x.v, total), 6)
 	}
 	sheet := quoteSheet(o.pg.name)
-	height := pixels(18 + ordinaryHeight*float64(o.row-top))
+	height := pixels(ordinaryHeight*float64(o.row-top+1)) - 12
 	return b.bars(o.pg, cellName(6, top), bars{
 		title:      "Heat lost by path (MWh a year)",
 		alt:        "Bar chart of the heat lost by path, largest first; the numbers stand in the table to its left",

@@ -13,9 +13,10 @@ import (
 // print set-up, tables, charts. The rows are the page's own: top is made at
 // once, body row by row while the file is written.
 type page struct {
-	name  string
-	about string // for the contents
-	part  string
+	name    string
+	about   string // for the contents: short
+	part    string
+	measure bool // ranks a measure
 
 	top   bytes.Buffer
 	body  func(*rows)

@@ -23,7 +23,7 @@ func (b *book) addRules() error {
 	set := b.in.Set
 	s := b.planFixed(rulesSheet, len(set.Rules))
 	l := &list[archetype.Rule]{
-		about: "The rules that fill what is not known of a building",
+		about: "what fills the gaps in the data",
 		tab:   muted, title: "Default rules",
 		notes: []string{
 			"For buildings of this use, attachment, span of years, construction and region (empty: any), the property has this value. The most specific rule wins.",
@@ -100,7 +100,7 @@ func (b *book) addBuildups() error {
 	}
 	s := b.planFixed(buildupsSheet, len(all))
 	l := &list[layerRow]{
-		about: "The layers that default U-values of walls, roofs and floors come from",
+		about: "the layers behind default U-values",
 		tab:   muted, title: "Build-ups",
 		notes: []string{
 			fmt.Sprintf("%s build-ups, from inside to outside. U by ISO 6946 at normal exposure; floors on the ground get theirs from ISO 13370 and each building's shape, so none stands here.", count(len(set.Buildups))),
@@ -169,7 +169,7 @@ func (b *book) addMaterials() error {
 	set := b.in.Set
 	s := b.planFixed(materialsSheet, len(set.Materials))
 	l := &list[archetype.Material]{
-		about: "Design thermal conductivities that the build-ups use",
+		about: "conductivities that build-ups use",
 		tab:   muted, title: "Materials",
 		notes:  []string{"Design thermal conductivities that the layers of the build-ups use.", ""},
 		frozen: 1, rows: len(set.Materials), table: "materials",

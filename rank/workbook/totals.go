@@ -52,7 +52,7 @@ func (b *book) total(i int) (x totalRow) {
 func (b *book) addTotals() error {
 	s := b.planFixed(totalsSheet, len(b.terms.measures))
 	l := &list[totalRow]{
-		about: "Each measure added up over the buildings where it applies and saves energy",
+		about: "each measure added up",
 		tab:   accent, title: "Totals by measure",
 		notes: []string{
 			"Each measure on its own, in every building where it applies and saves energy, whatever it costs. Measures on the same building do not add up.",
