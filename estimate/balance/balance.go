@@ -97,7 +97,7 @@ func (in *Input) month(m *climate.Month, airWK float64, out *Month) {
 	gamma := out.GainLossRatio
 	if !(out.LossKWh > 0 && difference > 0) {
 		if gamma < 0 {
-			out.Utilisation = 1 / gamma
+			out.Utilisation = finite(1 / gamma)
 		}
 		return
 	}
@@ -116,7 +116,12 @@ func (in *Input) month(m *climate.Month, airWK float64, out *Month) {
 }
 
 // finite keeps a quotient by a vanishing loss from becoming infinite.
-func finite(v float64) float64 { return min(math.MaxFloat64, max(-math.MaxFloat64, v)) }
+func finite(v float64) float64 {
+	if math.Abs(v) > math.MaxFloat64 {
+		return math.Copysign(math.MaxFloat64, v)
+	}
+	return v
+}
 
 // DesignHeatLoadW is (H_tr + H_ve)(theta_i - theta_design) in W; none where the
 // design temperature is not below the room's. Source: EN 12831, simplified,

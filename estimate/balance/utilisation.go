@@ -22,7 +22,7 @@ func exponent(tauH float64) float64 { return a0 + tauH/tau0H }
 // below 0. Source: ISO 13790:2008, 12.2.1.1.
 func Utilisation(gamma, a float64) float64 {
 	if gamma < 0 {
-		return 1 / gamma
+		return finite(1 / gamma)
 	}
 	eta, _ := utilise(gamma, a)
 	return eta
