@@ -54,7 +54,7 @@ func (s *sheetBuilder) heads(free int, heads ...string) {
 	cells := make([]wrappedText, len(heads))
 	for i, h := range heads {
 		if i+1 < free {
-			cells[i] = wrappedText{h, assumptionWidth - 2}
+			cells[i] = wrappedText{h, assumptionWidth - 3.5}
 		}
 	}
 	s.next(heightOf(9, cells...) + 4)
@@ -213,37 +213,45 @@ func unitWords(unit string) string {
 	return unit
 }
 
-// targetWords put a measure's parameter into words; %s is the number.
-var targetWords = map[string]string{
-	"thickness_m":        "%s m thick",
-	"conductivity_w_mk":  "conductivity %s W/(mK)",
-	"skip_below_u":       "left alone at U of %s W/(m²K) or less",
-	"bridge_delta":       "thermal bridges changed by %s W/(m²K)",
-	"n50_factor":         "leakage times %s",
-	"n50_floor":          "but not below n50 of %s 1/h",
-	"skip_below_n50":     "left alone at n50 of %s 1/h or less",
-	"u":                  "U %s W/(m²K)",
-	"g":                  "g %s",
-	"frame_share":        "frame share %s",
-	"rate_m3h_m2":        "%s m³/h per m² of floor area",
-	"demand_factor":      "times %s by demand",
-	"fan_power":          "fan power %s W/(m³/h)",
-	"efficiency":         "heat recovery %s",
-	"recovery_cut":       "times %s for frost and leakage",
-	"temperature_drop_k": "rooms %s K cooler on average",
-	"distribution":       "efficiency of distribution and control %s",
-	"spf":                "seasonal performance factor %s",
+// targetWords put a measure's parameters into words, in the order they are said;
+// %s is the number. A parameter at its neutral number changes nothing and is left
+// out.
+var targetWords = []struct {
+	name, words string
+	neutral     float64
+}{
+	{"thickness_m", "%s m thick", 0},
+	{"conductivity_w_mk", "conductivity %s W/(mK)", 0},
+	{"u", "U %s W/(m²K)", 0},
+	{"g", "g %s", -1},
+	{"frame_share", "frame share %s", -1},
+	{"rate_m3h_m2", "%s m³/h per m² of floor area", 0},
+	{"demand_factor", "times %s by demand", 1},
+	{"efficiency", "heat recovery %s", 0},
+	{"recovery_cut", "times %s for frost and leakage", 1},
+	{"fan_power", "fan power %s W/(m³/h)", -1},
+	{"temperature_drop_k", "rooms %s K cooler on average", 0},
+	{"distribution", "efficiency of distribution and control %s", 0},
+	{"spf", "seasonal performance factor %s", 0},
+	{"bridge_delta", "thermal bridges changed by %s W/(m²K)", 0},
+	{"n50_factor", "leakage times %s", 1},
+	{"n50_floor", "but not below n50 of %s 1/h", 0},
+	{"skip_below_u", "left alone at U of %s W/(m²K) or less", 0},
+	{"skip_below_n50", "left alone at n50 of %s 1/h or less", 0},
 }
 
 func describeTargets(target map[string]float64) string {
 	var out []string
-	for _, name := range slices.Sorted(maps.Keys(target)) {
-		v := strconv.FormatFloat(target[name], 'g', -1, 64)
-		if words, ok := targetWords[name]; ok {
-			out = append(out, fmt.Sprintf(words, v))
-		} else {
-			out = append(out, strings.ReplaceAll(name, "_", " ")+" "+v)
+	number := func(v float64) string { return strconv.FormatFloat(v, 'g', -1, 64) }
+	rest := maps.Clone(target)
+	for _, w := range targetWords {
+		if v, ok := target[w.name]; ok && v != w.neutral {
+			out = append(out, fmt.Sprintf(w.words, number(v)))
 		}
+		delete(rest, w.name)
+	}
+	for _, name := range slices.Sorted(maps.Keys(rest)) {
+		out = append(out, strings.ReplaceAll(name, "_", " ")+" "+number(rest[name]))
 	}
 	return strings.Join(out, "; ")
 }

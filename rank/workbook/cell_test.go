@@ -154,3 +154,15 @@ func TestCount(t *testing.T) {
 		}
 	}
 }
+
+func TestDescribeTargets(t *testing.T) {
+	t.Parallel()
+	got := describeTargets(map[string]float64{"n50_factor": 1, "thickness_m": 0.16, "bridge_delta": -0.03, "reed_share": 0.5, "skip_below_u": 0.4})
+	want := "0.16 m thick; thermal bridges changed by -0.03 W/(m²K); left alone at U of 0.4 W/(m²K) or less; reed share 0.5"
+	if got != want {
+		t.Errorf("got %q, want %q", got, want)
+	}
+	if got := describeTargets(nil); got != "" {
+		t.Errorf("nothing is described as %q", got)
+	}
+}

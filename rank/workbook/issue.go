@@ -30,16 +30,17 @@ func (b *book) addIssues() error {
 				counted(by[finding.Warning], "warning") + " (value set aside, the rest of the row used), " + counted(by[finding.Note], "note") + ".",
 			"Rows set aside also stand in a workbook named after their source with -to-fix at the end: mend them there and load that file.",
 		},
-		frozen: 1, wide: 2, rows: len(findings), table: "issues",
+		frozen: 1, rows: len(findings), table: "issues",
 	}
 	text := func(band, head string, width float64, get func(*finding.Finding) string) {
 		l.columns = append(l.columns, textColumn(b, band, head, width, get))
 	}
 	const what, where, do = "What kind", "Where", "What to do"
-	text(what, "Severity", 24, func(f *finding.Finding) string { return severityWords[f.Severity] })
-	text(what, "Check", 22, func(f *finding.Finding) string { return f.Check })
-	text(where, "File", 28, func(f *finding.Finding) string { return f.File })
-	text(where, "Sheet", 16, func(f *finding.Finding) string { return f.Sheet })
+	const wrongWidth, fixWidth = 52, 38
+	text(what, "Severity", 23, func(f *finding.Finding) string { return severityWords[f.Severity] })
+	text(what, "Check", 18, func(f *finding.Finding) string { return f.Check })
+	text(where, "File", 22, func(f *finding.Finding) string { return f.File })
+	text(where, "Sheet", 13, func(f *finding.Finding) string { return f.Sheet })
 	l.columns = append(l.columns, numberColumn(b, "", where, "Row", 8, plain, 0, func(f *finding.Finding) float64 {
 		if f.Row == 0 {
 			return math.NaN()
@@ -47,18 +48,18 @@ func (b *book) addIssues() error {
 		return float64(f.Row)
 	}))
 	text(where, "Column", 10, func(f *finding.Finding) string { return f.Column })
-	text(where, "Field", 22, func(f *finding.Finding) string { return fieldLabel(f.Field) })
-	text(where, "Building", 14, func(f *finding.Finding) string { return f.Building })
+	text(where, "Field", 19, func(f *finding.Finding) string { return fieldLabel(f.Field) })
+	text(where, "Building", 13, func(f *finding.Finding) string { return f.Building })
 	buildingColumn := len(l.columns)
-	text(where, "What the cell said", 24, func(f *finding.Finding) string { return f.Raw })
-	text(do, "What is wrong", 70, func(f *finding.Finding) string { return f.Text })
+	text(where, "What the cell said", 17, func(f *finding.Finding) string { return f.Raw })
+	text(do, "What is wrong", wrongWidth, func(f *finding.Finding) string { return f.Text })
 	l.columns[len(l.columns)-1].style = b.st.wrapped()
-	text(do, "What to do", 50, func(f *finding.Finding) string { return f.Fix })
+	text(do, "What to do", fixWidth, func(f *finding.Finding) string { return f.Fix })
 	l.columns[len(l.columns)-1].style = b.st.wrapped()
 
 	l.load = func(i int, x *finding.Finding) { *x = findings[i] }
 	l.height = func(f *finding.Finding) float64 {
-		return rowHeight(wrappedText{f.Text, 70}, wrappedText{f.Fix, 50})
+		return rowHeight(wrappedText{f.Text, wrongWidth}, wrappedText{f.Fix, fixWidth})
 	}
 	l.links = func(k *links, i, row int) {
 		if at, ok := b.index[findings[i].Building]; ok && findings[i].Building != "" {
