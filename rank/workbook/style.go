@@ -149,7 +149,9 @@ func (s *styles) band() int { return s.id(look{bold: true, color: accent, fill: 
 func (s *styles) text() int     { return s.id(look{format: asText, edge: line}) }
 func (s *styles) textLink() int { return s.id(look{format: asText, edge: line, link: true}) }
 func (s *styles) words() int    { return s.id(look{edge: line}) }
-func (s *styles) wrapped() int  { return s.id(look{edge: line, wrap: true, size: 9, align: "left", indent: 1}) }
+func (s *styles) wrapped() int {
+	return s.id(look{edge: line, wrap: true, size: 9, align: "left", indent: 1})
+}
 func (s *styles) value(format string) int {
 	return s.id(look{format: padded(format), edge: line, align: "right"})
 }
