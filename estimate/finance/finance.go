@@ -2,85 +2,83 @@
 // price rises, annuity, payback, cost of saved energy, and global cost in the
 // manner of EN 15459-1.
 //
-// Symbols: i interest rate, e price rise, both real and per year; N years; I
-// investment; S saving and M upkeep per year. Left out: tax, subsidies, loans.
+// Symbols: i interest rate, e price rise, both real and per year, above -1; N
+// years; I investment; S saving and M upkeep per year. Payments fall due at the
+// end of each year. Left out: tax, subsidies, loans, internal rate of return.
 package finance
 
 import "math"
 
-// PresentValueFactor is sum over t = 1..years of ((1+e)/(1+i))^t: what one unit
-// a year, rising by e, is worth today. For whole years it equals
-// (1+e)/(i-e) (1 - ((1+e)/(1+i))^N), and N at e = i.
-func PresentValueFactor(rate, rise, years float64) float64 {
-	q := (1 + rise) / (1 + rate)
-	l := math.Log(q)
-	if math.Abs(l) < 1e-12 {
-		return years
-	}
-	// q (1 - q^N)/(1 - q) by expm1, which keeps its digits near q = 1.
-	return q * math.Expm1(years*l) / math.Expm1(l)
+// RealRate is the interest rate without inflation: (R - R_i)/(1 + R_i). Source:
+// EN 15459-1.
+func RealRate(marketRate, inflation float64) float64 {
+	return (marketRate - inflation) / (1 + inflation)
 }
 
-// CapitalRecovery is the annuity of one unit of investment:
-// i/(1 - (1+i)^-N), 1/N at i = 0.
+// PresentValueFactor is sum over t = 1..N of ((1+e)/(1+i))^t: what one unit a year,
+// rising by e, is worth today. It equals (1+e)/(i-e) (1 - ((1+e)/(1+i))^N), and N
+// at e = i; between whole years it is that formula. None for N <= 0.
+//
+// The formula as it stands loses its digits where e nears i. With q = (1+e)/(1+i) it
+// is q (q^N - 1)/(q - 1), made by log1p and expm1, which keep them.
+func PresentValueFactor(rate, rise, years float64) float64 {
+	if years <= 0 {
+		return 0
+	}
+	q1 := (rise - rate) / (1 + rate) // q - 1
+	if q1 == 0 {
+		return years
+	}
+	return (1 + q1) * math.Expm1(years*math.Log1p(q1)) / q1
+}
+
+// CapitalRecovery is the yearly cost over N years of one unit invested:
+// i/(1 - (1+i)^-N), 1/N at i = 0; +Inf for N <= 0.
 func CapitalRecovery(rate, years float64) float64 { return 1 / PresentValueFactor(rate, 0, years) }
 
-// NetPresentValue is -I + sum over t of (S (1+e)^t - M)/(1+i)^t.
+// annual is the annuity of an investment; none where nothing is invested, however
+// short the years.
+func annual(investment, rate, years float64) float64 {
+	if investment == 0 {
+		return 0
+	}
+	return investment * CapitalRecovery(rate, years)
+}
+
+// NetPresentValue is -I + sum over t of (S (1+e)^t - M)/(1+i)^t: savings rise with
+// the price, upkeep does not.
 func NetPresentValue(investment, saving, upkeep, rate, rise, years float64) float64 {
 	return -investment + saving*PresentValueFactor(rate, rise, years) - upkeep*PresentValueFactor(rate, 0, years)
 }
 
-// SimplePayback is I/S in years; +Inf, "never", where nothing is saved.
-func SimplePayback(investment, saving float64) float64 {
-	if saving <= 0 {
-		return math.Inf(1)
-	}
-	return investment / saving
-}
-
-// DiscountedPayback is -ln(1 - i I/S)/ln(1 + i) in years; +Inf where i I >= S.
-func DiscountedPayback(investment, saving, rate float64) float64 {
-	if rate == 0 {
-		return SimplePayback(investment, saving)
-	}
-	if saving <= 0 || rate*investment >= saving {
-		return math.Inf(1)
-	}
-	return -math.Log(1-rate*investment/saving) / math.Log(1+rate)
-}
-
 // CostOfSavedEnergy is (a I + M)/saved per unit of energy, a the annuity; +Inf
-// where nothing is saved.
+// where nothing is saved. Where the element is due anyway, I is the extra cost.
 func CostOfSavedEnergy(investment, upkeep, savedKWh, rate, years float64) float64 {
 	if savedKWh <= 0 {
 		return math.Inf(1)
 	}
-	return (CapitalRecovery(rate, years)*investment + upkeep) / savedKWh
+	return (annual(investment, rate, years) + upkeep) / savedKWh
 }
 
-// AbatementCost is (I a - S)/dCO2 per unit of CO2.
+// AbatementCost is (I a - S)/dCO2 per unit of CO2 avoided a year; +Inf where none
+// is. Measures with negative cost must not be ordered by it: of two that gain the
+// same, the one that avoids less looks better.
 func AbatementCost(investment, saving, co2, rate, years float64) float64 {
-	return (investment*CapitalRecovery(rate, years) - saving) / co2
-}
-
-// GlobalCost is what a building costs over a calculation period in today's money: initial
-// investment, yearly cost, replacements of a component within it, less the
-// linear residual value of its last one. Source: EN 15459-1.
-func GlobalCost(initial, component, componentLife, yearly, rate, period float64) float64 {
-	cost := initial + yearly*PresentValueFactor(rate, 0, period)
-	last := 0.0
-	if componentLife > 0 {
-		for t := componentLife; t < period; t += componentLife {
-			cost += component * math.Pow(1+rate, -t)
-			last = t
-		}
-		cost -= component * (componentLife - (period - last)) / componentLife * math.Pow(1+rate, -period)
+	if co2 <= 0 {
+		return math.Inf(1)
 	}
-	return cost
+	return (annual(investment, rate, years) - saving) / co2
 }
 
 // LearnedCost is c0 (x/x0)^b with b = log2(1 - learning rate): unit cost after
-// cumulative volume grew by the ratio.
+// cumulative volume grew by the ratio. Source: experience curve.
 func LearnedCost(cost, ratio, learningRate float64) float64 {
 	return cost * math.Pow(ratio, math.Log2(1-learningRate))
+}
+
+// UnitNormalLoss is L(z) = phi(z) - z (1 - Phi(z)): what knowing beforehand is worth,
+// per standard deviation, where the expected benefit of acting is z standard
+// deviations from nothing. Source: two actions with linear loss, normal prior.
+func UnitNormalLoss(z float64) float64 {
+	return math.Exp(-z*z/2)/math.Sqrt(2*math.Pi) - z*math.Erfc(z/math.Sqrt2)/2
 }
