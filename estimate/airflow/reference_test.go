@@ -166,3 +166,14 @@ func TestLeakage(t *testing.T) {
 		near(t, "fan and infiltration", fan+StandardInfiltrationM3H(250, 3, 0.07, 15, fan), want, 0.05)
 	}
 }
+
+// Stack pressure over 10 m at 20/0 C: by the meteorological constant
+// (liquisearch.com, read) 8.65 Pa, to a digit more than printed; wind of 5 m/s at
+// 1.2 kg/m3: 15 Pa, exact.
+func TestPressuresByHand(t *testing.T) {
+	t.Parallel()
+	near(t, "stack, by the constant", 0.0342*101325*10*(1/273.15-1/293.15), 8.65, 0.01)
+	near(t, "stack", StackPressure(10, 20, 0), 8.65, 0.01)
+	near(t, "stack at -10 C", StackPressure(10, 20, -10), 13.5, 0.05)
+	near(t, "wind", WindPressure(densityK/1.2-zeroK, 5), 15, 1e-12)
+}
