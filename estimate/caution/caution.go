@@ -40,7 +40,7 @@ var all = []Info{
 	{Cavity, "driving rain, state of the cavity",
 		"Filling a cavity can lead rain to the inner leaf where the outer leaf is porous, cracked or exposed to driving rain. Have the cavity and wall ties inspected first; follow the local code for exposed sites."},
 	{Mould, "cold surfaces, risk of mould",
-		"The inside surface temperature factor of the wall is below 0.70 when calculated with an inside surface resistance of 0.25 m2K/W: mould is possible at ordinary indoor humidity, first in corners and behind furniture. Check thermal bridges, moisture and ventilation together (ISO 13788)."},
+		"The inside surface temperature factor of the wall is below 0.70 when calculated with an inside surface resistance of 0.25 m²K/W: mould is possible at ordinary indoor humidity, first in corners and behind furniture. Check thermal bridges, moisture and ventilation together (ISO 13788)."},
 	{Fire, "fire safety of the facade",
 		"Insulation and cladding can carry fire up a facade. The choice of material, fire barriers and fixing on tall or occupied buildings is a matter for the local fire code and a licensed fire engineer, whatever the saving."},
 	{Asbestos, "asbestos and lead survey first",

@@ -115,7 +115,7 @@ func (b *book) addAssumptions() error {
 	if err := b.link(pg, cellName(1, s.row), overviewTarget); err != nil {
 		return err
 	}
-	s.r.text(2, b.st.subtitle(), "Everything else on this sheet is a record of what the energy was computed with. To change it, give an assumptions file to a new run.")
+	s.r.text(2, b.st.subtitle(), "Everything else on this sheet is a record of what the energy was computed with.")
 
 	b.economics(s)
 	b.carriers(s)
