@@ -435,3 +435,22 @@ func TestRegisters(t *testing.T) {
 		}
 	}
 }
+
+func TestReaderThatGoesAway(t *testing.T) {
+	t.Parallel()
+	u := newUser(t)
+	u.write("good.csv", good)
+	cmd := u.command("screen", "good.csv")
+	out, err := cmd.StdoutPipe()
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := cmd.Start(); err != nil {
+		t.Fatal(err)
+	}
+	out.Close()
+	if err := cmd.Wait(); err != nil {
+		t.Errorf("the command ends with %v", err)
+	}
+	u.stopped()
+}
