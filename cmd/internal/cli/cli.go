@@ -128,10 +128,20 @@ func args(check cobra.PositionalArgs) cobra.PositionalArgs {
 	}
 }
 
-// session opens the store for one command.
-func (a *app) session(ctx context.Context) (*pipeline.Session, error) {
-	return pipeline.Open(ctx, pipeline.Config{
+// within runs f with the store open, and closes it whatever happens; the first
+// error counts.
+func (a *app) within(ctx context.Context, f func(*pipeline.Session) error) (err error) {
+	s, err := pipeline.Open(ctx, pipeline.Config{
 		DB: a.db, Portfolio: a.portfolio, Climate: a.climate, Workers: a.workers,
 		Progress: progress.New(a.err, a.quiet),
 	})
+	if err != nil {
+		return err
+	}
+	defer func() {
+		if e := s.Close(ctx); e != nil && err == nil {
+			err = e
+		}
+	}()
+	return f(s)
 }

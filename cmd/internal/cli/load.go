@@ -1,7 +1,6 @@
 package cli
 
 import (
-	"context"
 	"fmt"
 	"io"
 	"text/tabwriter"
@@ -14,13 +13,6 @@ import (
 	"kelvinrow/ingest/header"
 )
 
-// closeSession ends the session and keeps the first error.
-func closeSession(ctx context.Context, s *pipeline.Session, err *error) {
-	if e := s.Close(ctx); e != nil && *err == nil {
-		*err = e
-	}
-}
-
 func (a *app) load() *cobra.Command {
 	var l loadFlags
 	var asJSON bool
@@ -30,36 +22,33 @@ func (a *app) load() *cobra.Command {
 		Example: `  kelvinrow load register.xlsx
   kelvinrow load survey.xlsx --kind surveyed`,
 		Args: args(cobra.MinimumNArgs(1)),
-		RunE: func(c *cobra.Command, files []string) (err error) {
+		RunE: func(c *cobra.Command, files []string) error {
 			opt, err := l.options(files)
 			if err != nil {
 				return err
 			}
 			ctx := c.Context()
-			s, err := a.session(ctx)
-			if err != nil {
-				return err
-			}
-			defer closeSession(ctx, s, &err)
-			out, err := s.Load(ctx, opt)
-			if err != nil {
-				return err
-			}
-			if asJSON {
-				err = writeJSON(a.out, map[string]any{
-					"rows": out.Rows, "used": out.Used, "set_aside": out.SetAside,
-					"already_loaded": list(out.Already), "to_fix": list(out.ToFix), "findings": list(out.Findings),
-				})
+			return a.within(ctx, func(s *pipeline.Session) error {
+				out, err := s.Load(ctx, opt)
 				if err != nil {
 					return err
 				}
-			} else {
-				a.tellLoad(out)
-			}
-			if out.Faulty() {
-				return errSetAside
-			}
-			return nil
+				if asJSON {
+					err = writeJSON(a.out, map[string]any{
+						"rows": out.Rows, "used": out.Used, "set_aside": out.SetAside,
+						"already_loaded": list(out.Already), "to_fix": list(out.ToFix), "findings": list(out.Findings),
+					})
+					if err != nil {
+						return err
+					}
+				} else {
+					a.tellLoad(out)
+				}
+				if out.Faulty() {
+					return errSetAside
+				}
+				return nil
+			})
 		},
 	}
 	l.add(c)

@@ -5,6 +5,8 @@ import (
 	"text/tabwriter"
 
 	"github.com/spf13/cobra"
+
+	"kelvinrow/cmd/internal/pipeline"
 )
 
 func (a *app) rank() *cobra.Command {
@@ -15,24 +17,21 @@ func (a *app) rank() *cobra.Command {
 		Example: `  kelvinrow rank -o ranked.xlsx
   kelvinrow rank --by npv --top 200 -o ranked-by-npv.xlsx`,
 		Args: args(cobra.NoArgs),
-		RunE: func(c *cobra.Command, _ []string) (err error) {
+		RunE: func(c *cobra.Command, _ []string) error {
 			opt, err := r.options()
 			if err != nil {
 				return err
 			}
 			ctx := c.Context()
-			s, err := a.session(ctx)
-			if err != nil {
-				return err
-			}
-			defer closeSession(ctx, s, &err)
-			out, err := s.Rank(ctx, opt, nil)
-			if err != nil {
-				return err
-			}
-			a.tellRank(out)
-			a.tellTimes(s.Timings)
-			return nil
+			return a.within(ctx, func(s *pipeline.Session) error {
+				out, err := s.Rank(ctx, opt, nil)
+				if err != nil {
+					return err
+				}
+				a.tellRank(out)
+				a.tellTimes(s.Timings)
+				return nil
+			})
 		},
 	}
 	r.add(c, "ranked.xlsx")
@@ -47,31 +46,28 @@ func (a *app) runs() *cobra.Command {
 		Short:   "List the runs stored, with their inputs and assumptions",
 		Example: "  kelvinrow runs --portfolio demo",
 		Args:    args(cobra.NoArgs),
-		RunE: func(c *cobra.Command, _ []string) (err error) {
+		RunE: func(c *cobra.Command, _ []string) error {
 			ctx := c.Context()
-			s, err := a.session(ctx)
-			if err != nil {
-				return err
-			}
-			defer closeSession(ctx, s, &err)
-			runs, err := s.Store.Runs(ctx, a.portfolio)
-			if err != nil {
-				return err
-			}
-			if asJSON {
-				return writeJSON(a.out, list(runs))
-			}
-			if len(runs) == 0 {
-				fmt.Fprintf(a.err, "portfolio %q has no runs\n", a.portfolio)
-				return nil
-			}
-			w := tabwriter.NewWriter(a.out, 0, 4, 2, ' ', 0)
-			fmt.Fprintln(w, "run\ttime (UTC)\tbuildings\tfailed\tclimate\tby\tversion\tassumptions\tinputs")
-			for _, r := range runs {
-				fmt.Fprintf(w, "%d\t%s\t%d\t%d\t%s\t%s\t%s\t%.12s\t%.12s\n", r.Number, r.Time.UTC().Format("2006-01-02 15:04:05"),
-					r.Buildings, r.Failed, r.Climate, r.Yardstick, r.Version, r.Assumptions, r.Inputs)
-			}
-			return w.Flush()
+			return a.within(ctx, func(s *pipeline.Session) error {
+				runs, err := s.Store.Runs(ctx, a.portfolio)
+				if err != nil {
+					return err
+				}
+				if asJSON {
+					return writeJSON(a.out, list(runs))
+				}
+				if len(runs) == 0 {
+					fmt.Fprintf(a.err, "portfolio %q has no runs\n", a.portfolio)
+					return nil
+				}
+				w := tabwriter.NewWriter(a.out, 0, 4, 2, ' ', 0)
+				fmt.Fprintln(w, "run\ttime (UTC)\tbuildings\tfailed\tclimate\tby\tversion\tassumptions\tinputs")
+				for _, r := range runs {
+					fmt.Fprintf(w, "%d\t%s\t%d\t%d\t%s\t%s\t%s\t%.12s\t%.12s\n", r.Number, r.Time.UTC().Format("2006-01-02 15:04:05"),
+						r.Buildings, r.Failed, r.Climate, r.Yardstick, r.Version, r.Assumptions, r.Inputs)
+				}
+				return w.Flush()
+			})
 		},
 	}
 	c.Flags().BoolVar(&asJSON, "json", false, "print as JSON")
@@ -86,21 +82,18 @@ func (a *app) explain() *cobra.Command {
 		Example: `  kelvinrow explain A-0412
   kelvinrow explain A-0412 --json > A-0412.json`,
 		Args: args(cobra.ExactArgs(1)),
-		RunE: func(c *cobra.Command, given []string) (err error) {
+		RunE: func(c *cobra.Command, given []string) error {
 			ctx := c.Context()
-			s, err := a.session(ctx)
-			if err != nil {
-				return err
-			}
-			defer closeSession(ctx, s, &err)
-			e, err := s.Explain(ctx, given[0])
-			if err != nil {
-				return err
-			}
-			if asJSON {
-				return writeJSON(a.out, e)
-			}
-			return e.WriteText(a.out)
+			return a.within(ctx, func(s *pipeline.Session) error {
+				e, err := s.Explain(ctx, given[0])
+				if err != nil {
+					return err
+				}
+				if asJSON {
+					return writeJSON(a.out, e)
+				}
+				return e.WriteText(a.out)
+			})
 		},
 	}
 	c.Flags().BoolVar(&asJSON, "json", false, "print as JSON, in full precision")

@@ -89,28 +89,25 @@ the workbook. Loading the same file again changes nothing.`,
 	return c
 }
 
-func (a *app) runScreen(c *cobra.Command, loading pipeline.LoadOptions, ranking pipeline.RankOptions) (err error) {
+func (a *app) runScreen(c *cobra.Command, loading pipeline.LoadOptions, ranking pipeline.RankOptions) error {
 	ctx := c.Context()
-	s, err := a.session(ctx)
-	if err != nil {
-		return err
-	}
-	defer closeSession(ctx, s, &err)
-	loaded, err := s.Load(ctx, loading)
-	if err != nil {
-		return err
-	}
-	a.tellLoad(loaded)
-	ranked, err := s.Rank(ctx, ranking, loaded.Findings)
-	if err != nil {
-		return err
-	}
-	a.tellRank(ranked)
-	a.tellTimes(s.Timings)
-	if loaded.Faulty() {
-		return errSetAside
-	}
-	return nil
+	return a.within(ctx, func(s *pipeline.Session) error {
+		loaded, err := s.Load(ctx, loading)
+		if err != nil {
+			return err
+		}
+		a.tellLoad(loaded)
+		ranked, err := s.Rank(ctx, ranking, loaded.Findings)
+		if err != nil {
+			return err
+		}
+		a.tellRank(ranked)
+		a.tellTimes(s.Timings)
+		if loaded.Faulty() {
+			return errSetAside
+		}
+		return nil
+	})
 }
 
 func (a *app) demo() *cobra.Command {
