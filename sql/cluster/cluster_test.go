@@ -1,12 +1,16 @@
 package cluster
 
 import (
+	"bufio"
 	"context"
+	"errors"
 	"fmt"
+	"io"
 	"os"
 	"os/exec"
 	"path/filepath"
 	"strings"
+	"sync"
 	"syscall"
 	"testing"
 	"time"
@@ -20,11 +24,12 @@ const holdVariable = "KELVINROW_TEST_HOLD"
 
 func TestMain(m *testing.M) {
 	if dir := os.Getenv(holdVariable); dir != "" {
-		if _, err := Start(context.Background(), dir); err != nil {
+		c, err := Start(context.Background(), dir)
+		if err != nil {
 			fmt.Println("failed:", err)
 			os.Exit(1)
 		}
-		fmt.Println("holding")
+		fmt.Println("holding", c.home.postmaster())
 		time.Sleep(time.Hour)
 	}
 	os.Exit(m.Run())
@@ -60,13 +65,20 @@ func mustStart(t *testing.T, dir string) *Cluster {
 	return c
 }
 
-func running(t *testing.T, dir string) bool {
+func mustRelease(t *testing.T, c *Cluster) {
+	t.Helper()
+	if err := c.Release(t.Context()); err != nil {
+		t.Fatal(err)
+	}
+}
+
+func status(t *testing.T, dir string) State {
 	t.Helper()
 	s, err := Status(dir)
 	if err != nil {
 		t.Fatal(err)
 	}
-	return s.Running
+	return s
 }
 
 func query(t *testing.T, c *Cluster, sql string) string {
@@ -83,6 +95,49 @@ func query(t *testing.T, c *Cluster, sql string) string {
 	return s
 }
 
+// holder is another process that uses the cluster.
+type holder struct {
+	cmd *exec.Cmd
+	out *bufio.Reader
+}
+
+func launch(t *testing.T, dir string) *holder {
+	t.Helper()
+	cmd := exec.Command(os.Args[0])
+	cmd.Env = append(os.Environ(), holdVariable+"="+dir)
+	cmd.SysProcAttr = &syscall.SysProcAttr{Setpgid: true} // as a shell does with a job
+	out, err := cmd.StdoutPipe()
+	if err != nil {
+		t.Fatal(err)
+	}
+	if err := cmd.Start(); err != nil {
+		t.Fatal(err)
+	}
+	h := &holder{cmd, bufio.NewReader(out)}
+	t.Cleanup(func() {
+		_ = syscall.Kill(-cmd.Process.Pid, syscall.SIGKILL) // gone, usually
+		_ = cmd.Wait()                                      // killed
+	})
+	return h
+}
+
+func hold(t *testing.T, dir string) *holder {
+	t.Helper()
+	h := launch(t, dir)
+	if line, err := h.out.ReadString('\n'); err != nil || !strings.HasPrefix(line, "holding") {
+		t.Fatalf("the other command says %q, %v", line, err)
+	}
+	return h
+}
+
+// kill kills the whole process group at once, as a closing terminal may.
+func (h *holder) kill(t *testing.T) {
+	t.Helper()
+	if err := syscall.Kill(-h.cmd.Process.Pid, syscall.SIGKILL); err != nil {
+		t.Fatal(err)
+	}
+}
+
 func TestStartsOnDemandAndStopsWithTheLastUser(t *testing.T) {
 	t.Parallel()
 	dir := testDir(t)
@@ -91,27 +146,53 @@ func TestStartsOnDemandAndStopsWithTheLastUser(t *testing.T) {
 	if got := query(t, second, "show listen_addresses"); got != "" {
 		t.Errorf("listens on %q, want no network at all", got)
 	}
-	info, err := os.Stat(first.home.dir)
-	if err != nil {
-		t.Fatal(err)
+	for _, name := range []string{"fsync", "synchronous_commit", "autovacuum"} {
+		if got := query(t, second, "show "+name); got != "on" {
+			t.Errorf("%s is %q, want on", name, got)
+		}
 	}
-	if info.Mode().Perm() != 0o700 {
-		t.Errorf("the folder has mode %v, want 0700", info.Mode().Perm())
+	for _, d := range []string{first.home.dir, first.home.data(), first.home.sockets} {
+		info, err := os.Stat(d)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if info.Mode().Perm() != 0o700 {
+			t.Errorf("%s has mode %v, want 0700", d, info.Mode().Perm())
+		}
 	}
-	if err := first.Release(t.Context()); err != nil {
-		t.Fatal(err)
+	if s := status(t, dir); !s.Made || !s.Running || !s.InUse || s.Version != query(t, second, "select split_part(current_setting('server_version'), '.', 1)") {
+		t.Errorf("status in use: %+v", s)
 	}
-	if !running(t, dir) {
+	mustRelease(t, first)
+	mustRelease(t, first) // twice is no harm
+	if !status(t, dir).Running {
 		t.Fatal("stopped while a second command uses it")
 	}
-	if err := Stop(t.Context(), dir); err != ErrInUse {
-		t.Errorf("Stop while in use: %v, want ErrInUse", err)
-	}
-	if err := second.Release(t.Context()); err != nil {
+	query(t, second, "select 'answers'")
+	ctx, cancel := context.WithCancel(t.Context())
+	cancel() // as after Ctrl-C
+	if err := second.Release(ctx); err != nil {
 		t.Fatal(err)
 	}
-	if running(t, dir) {
-		t.Error("still running after its last user")
+	if s := status(t, dir); s.Running || s.InUse {
+		t.Errorf("after its last user: %+v", s)
+	}
+}
+
+func TestManyCommandsMayStartAtOnce(t *testing.T) {
+	t.Parallel()
+	dir := testDir(t)
+	var wg sync.WaitGroup
+	servers := make([]string, 4)
+	for i := range servers {
+		h := launch(t, dir)
+		wg.Go(func() { servers[i], _ = h.out.ReadString('\n') })
+	}
+	wg.Wait()
+	for _, s := range servers {
+		if s != servers[0] || !strings.HasPrefix(s, "holding ") {
+			t.Fatalf("not one server for all: %q", servers)
+		}
 	}
 }
 
@@ -119,7 +200,6 @@ func TestDataOutlivesAStop(t *testing.T) {
 	t.Parallel()
 	dir := testDir(t)
 	c := mustStart(t, dir)
-	query(t, c, "select set_config('x.y', 'z', false)")
 	conn, err := pgx.Connect(t.Context(), c.URL())
 	if err != nil {
 		t.Fatal(err)
@@ -128,160 +208,113 @@ func TestDataOutlivesAStop(t *testing.T) {
 		t.Fatal(err)
 	}
 	conn.Close(t.Context())
-	if err := c.Release(t.Context()); err != nil {
-		t.Fatal(err)
-	}
+	mustRelease(t, c)
 	c = mustStart(t, dir)
 	if got := query(t, c, "select answer from kept"); got != "yes" {
 		t.Errorf("got %q", got)
 	}
-	if err := c.Release(t.Context()); err != nil {
-		t.Fatal(err)
-	}
+	mustRelease(t, c)
 }
 
-// hold starts another process that uses the cluster.
-func hold(t *testing.T, dir string) *exec.Cmd {
-	t.Helper()
-	cmd := exec.Command(os.Args[0])
-	cmd.Env = append(os.Environ(), holdVariable+"="+dir)
-	out, err := cmd.StdoutPipe()
-	if err != nil {
+func TestStopIsObeyedAlsoWhenInUse(t *testing.T) {
+	t.Parallel()
+	dir := testDir(t)
+	c := mustStart(t, dir)
+	if err := Stop(t.Context(), dir); err != nil {
 		t.Fatal(err)
 	}
-	if err := cmd.Start(); err != nil {
-		t.Fatal(err)
+	if s := status(t, dir); s.Running || !s.InUse {
+		t.Errorf("after Stop: %+v", s)
 	}
-	buf := make([]byte, 200)
-	n, _ := out.Read(buf)
-	if got := string(buf[:n]); !strings.HasPrefix(got, "holding") {
-		t.Fatalf("the other command says %q", got)
+	next := mustStart(t, dir)
+	mustRelease(t, c)
+	query(t, next, "select 'answers'")
+	mustRelease(t, next)
+	if status(t, dir).Running {
+		t.Error("still running after its last user")
 	}
-	return cmd
 }
 
 func TestKilledCommandLeavesAServerTheNextCanUseAndStop(t *testing.T) {
 	t.Parallel()
 	dir := testDir(t)
 	other := hold(t, dir)
-	if err := other.Process.Signal(syscall.SIGKILL); err != nil {
-		t.Fatal(err)
+	other.kill(t)
+	// A reader of the command's output must see its end, server or no server.
+	ended := make(chan error, 1)
+	go func() { _, err := io.Copy(io.Discard, other.out); ended <- err }()
+	select {
+	case err := <-ended:
+		if err != nil {
+			t.Fatal(err)
+		}
+	case <-time.After(20 * time.Second):
+		t.Fatal("the server holds the command's output open")
 	}
-	_ = other.Wait() // killed
-	if !running(t, dir) {
-		t.Fatal("the server died with the command: it must be in a session of its own")
+	if s := status(t, dir); !s.Running || s.InUse {
+		t.Fatalf("after kill -9 of the whole process group: %+v; the server must be in a session of its own", s)
 	}
 	c := mustStart(t, dir)
 	query(t, c, "select 'answers'")
-	if err := c.Release(t.Context()); err != nil {
-		t.Fatal(err)
-	}
-	if running(t, dir) {
+	mustRelease(t, c)
+	if status(t, dir).Running {
 		t.Error("still running after its last user")
 	}
 
-	other = hold(t, dir)
-	_ = other.Process.Kill()
-	_ = other.Wait() // killed
+	hold(t, dir).kill(t)
 	if err := Stop(t.Context(), dir); err != nil {
 		t.Fatal(err)
 	}
-	if running(t, dir) {
+	if status(t, dir).Running {
 		t.Error("still running after Stop")
 	}
 }
 
-func TestCrashedServerIsReplaced(t *testing.T) {
+func TestKilledWhileTheClusterIsMade(t *testing.T) {
 	t.Parallel()
 	dir := testDir(t)
+	other := launch(t, dir)
+	for begun := false; !begun; time.Sleep(5 * time.Millisecond) {
+		found, err := filepath.Glob(filepath.Join(dir, "store", "data.new-*", "PG_VERSION"))
+		if err != nil {
+			t.Fatal(err)
+		}
+		begun = len(found) > 0
+	}
+	other.kill(t)
+	// The initdb of the dead command may still be at work.
 	c := mustStart(t, dir)
-	pid := c.home.postmaster()
-	if err := syscall.Kill(pid, syscall.SIGKILL); err != nil {
-		t.Fatal(err)
-	}
-	for alive(pid) {
-		time.Sleep(10 * time.Millisecond)
-	}
-	c.lease.Close()
-	// A number that belongs to a living process that is no Postgres: this one.
-	pidFile := filepath.Join(c.home.data(), "postmaster.pid")
-	if err := os.WriteFile(pidFile, []byte(fmt.Sprintln(os.Getpid())), 0o644); err != nil {
-		t.Fatal(err)
-	}
-	c = mustStart(t, dir)
 	query(t, c, "select 'answers'")
-	if err := c.Release(t.Context()); err != nil {
-		t.Fatal(err)
-	}
+	mustRelease(t, c)
 }
 
-func TestInterruptedInitialisationIsInNobodysWay(t *testing.T) {
+func TestInterruptedStartLeavesNothingRunning(t *testing.T) {
 	t.Parallel()
 	dir := testDir(t)
-	h, err := open(dir, true)
-	if err != nil {
-		t.Fatal(err)
+	mustRelease(t, mustStart(t, dir)) // only the start itself shall be interrupted
+	for _, after := range []time.Duration{0, 5 * time.Millisecond, 30 * time.Millisecond} {
+		ctx, cancel := context.WithTimeout(t.Context(), after)
+		c, err := Start(ctx, dir)
+		cancel()
+		switch {
+		case err == nil: // quick enough
+			mustRelease(t, c)
+		case !errors.Is(err, context.DeadlineExceeded):
+			t.Errorf("after %v: %v", after, err)
+		}
+		if s := status(t, dir); s.Running || s.InUse {
+			t.Errorf("after %v: %+v", after, s)
+		}
 	}
-	if err := os.MkdirAll(h.path("data.new/base"), 0o755); err != nil {
-		t.Fatal(err)
-	}
-	c := mustStart(t, dir)
-	if err := c.Release(t.Context()); err != nil {
-		t.Fatal(err)
-	}
-}
-
-func TestDeepFolder(t *testing.T) {
-	t.Parallel()
-	dir := filepath.Join(testDir(t), strings.Repeat("a-long-name/", 12))
-	c := mustStart(t, dir)
-	query(t, c, "select 'answers'")
-	sockets := c.home.sockets
-	if err := c.Release(t.Context()); err != nil {
-		t.Fatal(err)
-	}
-	if err := os.RemoveAll(sockets); err != nil {
+	ctx, cancel := context.WithCancel(t.Context())
+	fresh := testDir(t)
+	time.AfterFunc(100*time.Millisecond, cancel) // in the middle of initdb
+	if c, err := Start(ctx, fresh); err == nil {
+		mustRelease(t, c)
+	} else if !errors.Is(err, context.Canceled) {
 		t.Error(err)
 	}
-}
-
-func TestMissingBinaries(t *testing.T) {
-	t.Setenv("KELVINROW_POSTGRES_BIN", t.TempDir())
-	_, err := Start(t.Context(), testDir(t))
-	if err != errMissing {
-		t.Fatalf("got %v", err)
-	}
-	if s := err.Error(); strings.Contains(s, "\n") || !strings.Contains(s, "apt-get install postgresql") {
-		t.Errorf("%q is not one line that says what to install", s)
-	}
-}
-
-func TestSomebodyElsesFolderIsRefused(t *testing.T) {
-	if os.Geteuid() != 0 {
-		t.Skip("only root can give a folder away")
-	}
-	t.Parallel()
-	dir := testDir(t)
-	if err := os.Mkdir(filepath.Join(dir, "store"), 0o755); err != nil {
-		t.Fatal(err)
-	}
-	_, err := Start(t.Context(), dir)
-	if err == nil || !strings.Contains(err.Error(), "is not a folder of account") {
-		t.Errorf("got %v", err)
-	}
-}
-
-func TestUnreachableFolderAsRoot(t *testing.T) {
-	if os.Geteuid() != 0 {
-		t.Skip("only root needs an account for the server")
-	}
-	t.Parallel()
-	dir := testDir(t)
-	if err := os.Chmod(dir, 0o700); err != nil {
-		t.Fatal(err)
-	}
-	_, err := Start(t.Context(), filepath.Join(dir, "below"))
-	if err == nil || !strings.Contains(err.Error(), dir) || !strings.Contains(err.Error(), "KELVINROW_STORE") {
-		t.Errorf("got %v", err)
+	if left, _ := filepath.Glob(filepath.Join(fresh, "store", "data.new-*")); len(left) > 0 {
+		t.Errorf("left behind: %v", left)
 	}
 }

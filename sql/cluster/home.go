@@ -2,13 +2,44 @@ package cluster
 
 import (
 	"crypto/sha256"
+	"errors"
 	"fmt"
+	"io/fs"
+	"net/url"
 	"os"
 	"os/user"
 	"path/filepath"
 	"strconv"
+	"strings"
 	"syscall"
 )
+
+// home is the folder of a private cluster.
+type home struct {
+	dir     string // data, locks and log
+	sockets string
+	account *account // the server's, when this process is root
+}
+
+func (h *home) path(name string) string { return filepath.Join(h.dir, name) }
+
+func (h *home) data() string { return h.path("data") }
+
+// version is the major version of the cluster's data, "" when there is none.
+func (h *home) version() string {
+	b, err := os.ReadFile(filepath.Join(h.data(), "PG_VERSION"))
+	if err != nil {
+		return ""
+	}
+	return strings.TrimSpace(string(b))
+}
+
+// url says everything that environment variables such as PGPORT might say
+// otherwise.
+func (h *home) url() string {
+	q := url.Values{"host": {h.sockets}, "port": {"5432"}, "user": {Role}, "sslmode": {"disable"}, "target_session_attrs": {"any"}}
+	return "postgres:///postgres?" + q.Encode()
+}
 
 // account is an unprivileged account that the server runs under when this
 // process is root, which Postgres refuses to run as.
@@ -37,31 +68,38 @@ func serverAccount() (*account, error) {
 			return &account{name, uint32(uid), uint32(gid)}, nil
 		}
 	}
-	return nil, fmt.Errorf("postgres does not run as root, and there is no account \"postgres\" or \"nobody\" to run it under: run kelvinrow as another user")
+	return nil, errors.New("postgres does not run as root, and there is no account \"postgres\" or \"nobody\" to run it under: run kelvinrow as another user")
 }
 
-// defaultDir is the usual place of the private cluster. Root's home cannot be
-// entered by the server's account, so root has a system folder.
+// defaultDir is the usual place of the private cluster.
 func defaultDir() (string, error) {
 	if d := os.Getenv("KELVINROW_STORE"); d != "" {
 		return filepath.Abs(d)
 	}
+	d := os.Getenv("XDG_DATA_HOME")
+	if !filepath.IsAbs(d) {
+		h, err := os.UserHomeDir()
+		if err != nil {
+			return "", fmt.Errorf("find a folder for the private Postgres: %w; set KELVINROW_STORE=DIR", err)
+		}
+		d = filepath.Join(h, ".local", "share")
+	}
+	d = filepath.Join(d, "kelvinrow")
 	if os.Geteuid() == 0 {
-		return "/var/lib/kelvinrow", nil
+		// Root's home is closed to the server's account; and under sudo the home
+		// may be an ordinary user's, whose own store must not become the server
+		// account's. So root has a system folder, one for each home.
+		sum := sha256.Sum256([]byte(d))
+		d = filepath.Join("/var/lib/kelvinrow", fmt.Sprintf("%x", sum[:4]))
 	}
-	if d := os.Getenv("XDG_DATA_HOME"); filepath.IsAbs(d) {
-		return filepath.Join(d, "kelvinrow"), nil
-	}
-	d, err := os.UserHomeDir()
-	if err != nil {
-		return "", fmt.Errorf("find a folder for the private Postgres: %w; set KELVINROW_STORE=DIR", err)
-	}
-	return filepath.Join(d, ".local", "share", "kelvinrow"), nil
+	return d, nil
 }
 
-// socketLimit is the longest socket path that every supported system takes,
-// with room for the socket's own name.
+// socketLimit is the longest socket path that every supported system takes
+// (macOS: 104 bytes with the final zero), with room for the socket's own name.
 const socketLimit = 100 - len("/.s.PGSQL.5432.lock")
+
+const elsewhere = "KELVINROW_STORE=DIR puts it elsewhere"
 
 // open finds the folder, and makes it when asked to. All of it lives in a
 // folder "store" of mode 0700 that belongs to the server's account.
@@ -78,29 +116,34 @@ func open(dir string, create bool) (*home, error) {
 	if dir, err = filepath.Abs(dir); err != nil {
 		return nil, err
 	}
+	if create {
+		if err := os.MkdirAll(dir, 0o755); err != nil {
+			return nil, fmt.Errorf("make the folder of the private Postgres: %w; %s", err, elsewhere)
+		}
+	}
+	// One folder has one name, or two commands would look for two sockets.
+	if d, err := filepath.EvalSymlinks(dir); err == nil {
+		dir = d
+	} else if create || !errors.Is(err, fs.ErrNotExist) {
+		return nil, err
+	}
 	h := &home{dir: filepath.Join(dir, "store"), account: a}
 	h.sockets = h.path("socket")
 	if len(h.sockets) > socketLimit {
+		// Not $TMPDIR or $XDG_RUNTIME_DIR: commands with another environment
+		// must come to the same place.
 		sum := sha256.Sum256([]byte(h.dir))
 		h.sockets = filepath.Join("/tmp", fmt.Sprintf("kelvinrow-%x", sum[:8]))
 	}
 	if !create {
 		return h, nil
 	}
-	if err := os.MkdirAll(dir, 0o755); err != nil {
-		return nil, fmt.Errorf("make the folder of the private Postgres: %w; KELVINROW_STORE=DIR puts it elsewhere", err)
-	}
 	if a != nil {
 		if err := reachable(dir, a); err != nil {
 			return nil, err
 		}
 	}
-	for _, d := range []string{h.dir, h.sockets} {
-		if err := h.private(d); err != nil {
-			return nil, err
-		}
-	}
-	return h, nil
+	return h, h.private(h.dir)
 }
 
 // private makes a folder that only the server's account can enter, or checks
@@ -108,10 +151,10 @@ func open(dir string, create bool) (*home, error) {
 func (h *home) private(dir string) error {
 	err := os.Mkdir(dir, 0o700)
 	if err == nil && h.account != nil {
-		err = os.Chown(dir, int(h.account.uid), int(h.account.gid))
+		err = os.Lchown(dir, int(h.account.uid), int(h.account.gid))
 	}
-	if err != nil && !os.IsExist(err) {
-		return fmt.Errorf("make the folder of the private Postgres: %w; KELVINROW_STORE=DIR puts it elsewhere", err)
+	if err != nil && !errors.Is(err, fs.ErrExist) {
+		return fmt.Errorf("make the folder of the private Postgres: %w; %s", err, elsewhere)
 	}
 	info, err := os.Lstat(dir)
 	if err != nil {
