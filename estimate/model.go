@@ -21,6 +21,7 @@ const (
 	ventAreaM2M           = 0.0015 // void ventilation openings per metre of perimeter, ISO 13370
 	voidHeightM           = 0.3    // floor above outside ground; judgement
 	voidWallUWM2K         = 1.7    // wall of the void; judgement, old brickwork
+	voidWindMS            = 4.0    // wind at 10 m for the void, before shielding; the usual value in ISO 13370
 	basementDepthM        = 2.2    // heated basement below ground; judgement
 	ductDischarge         = 0.6    // discharge coefficient of a passive-stack duct; common practice
 	ductAboveRoofM        = 1.0    // duct outlet above the eaves; judgement
@@ -193,7 +194,7 @@ func (b *Basis) envelope(r *reader, m *Model, g *geometry.Output) error {
 		switch f.FloorType {
 		case "suspended floor":
 			floor.VoidHeightM, floor.VentAreaM2M, floor.VoidWallUWM2K = voidHeightM, ventAreaM2M, voidWallUWM2K
-			floor.VoidWindMS, floor.VoidShelter = siteWind[f.Exposure], voidShelter[f.Exposure]
+			floor.VoidWindMS, floor.VoidShelter = voidWindMS, voidShelter[f.Exposure]
 		case "heated basement":
 			floor.BasementDepthM = basementDepthM
 		}

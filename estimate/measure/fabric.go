@@ -86,7 +86,7 @@ func insideWall(j *job) string {
 	if !done {
 		return orNone(found, "no outside wall")
 	}
-	j.cautions |= caution.InsideWall
+	j.cautions |= caution.InsideWall | caution.Overheating
 	if j.f.Protected {
 		j.cautions |= caution.Protected
 	}
