@@ -132,7 +132,7 @@ func inputText(in InputDoc) string {
 		if strings.HasPrefix(in.Field, "year") || strings.HasPrefix(in.Field, "windows_not") {
 			return fmt.Sprintf("%.0f", v)
 		}
-		return fmt.Sprintf("%.4g", v)
+		return fmt.Sprintf("%.6g", v)
 	}
 	return fmt.Sprint(in.Value)
 }
@@ -141,7 +141,7 @@ func originText(s SourceDoc) string {
 	if s.Rule != "" {
 		t := s.Rule
 		if s.Low != nil && s.High != nil && *s.Low != *s.High {
-			t += fmt.Sprintf(" (%.3g to %.3g)", *s.Low, *s.High)
+			t += fmt.Sprintf(" (%.4g to %.4g)", *s.Low, *s.High)
 		}
 		if s.Note != "" {
 			t += ": " + s.Note

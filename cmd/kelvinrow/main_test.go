@@ -349,6 +349,7 @@ func TestUsage(t *testing.T) {
 	for _, args := range [][]string{
 		{"screen"}, {"fly"}, {"rank", "--by", "beauty"}, {"screen", "good.csv", "--workers", "many"},
 		{"load", "good.csv", "--kind", "certain"}, {"screen", "good.csv", "-o", "r.txt"}, {"explain"},
+		{"screen", "good.csv", "-o", "nowhere/r.xlsx"},
 	} {
 		if status, out := u.run(args...); status != 2 || strings.Count(out, "\n") > 2 {
 			t.Errorf("kelvinrow %s: exit status %d, want 2 and one line\n%s", strings.Join(args, " "), status, out)

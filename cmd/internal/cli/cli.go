@@ -9,6 +9,7 @@ import (
 	"fmt"
 	"io"
 	"os"
+	"syscall"
 
 	"github.com/spf13/cobra"
 
@@ -60,6 +61,8 @@ func Run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
 		return statusDone
 	case errors.Is(err, errSetAside):
 		return statusSetAside
+	case errors.Is(err, syscall.EPIPE):
+		return statusFailed // whoever read the output has gone: nobody to tell
 	case errors.As(err, &usage):
 		fmt.Fprintf(stderr, "kelvinrow: %v\n", err)
 		return statusUsage

@@ -37,6 +37,10 @@ func (r *rankFlags) options() (pipeline.RankOptions, error) {
 	if ext := filepath.Ext(r.out); ext != ".xlsx" {
 		return pipeline.RankOptions{}, usagef("--output %s: the workbook's name must end in .xlsx", r.out)
 	}
+	// Said now, not after minutes of work.
+	if info, err := os.Stat(filepath.Dir(r.out)); err != nil || !info.IsDir() {
+		return pipeline.RankOptions{}, usagef("--output %s: there is no folder %s", r.out, filepath.Dir(r.out))
+	}
 	return pipeline.RankOptions{Out: r.out, Yardstick: y, Top: r.top}, nil
 }
 

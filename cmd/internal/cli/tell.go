@@ -164,6 +164,9 @@ func (a *app) tellRank(o *pipeline.RankOutcome) {
 func tonnes(kg float64) string { return fmt.Sprintf("%s t", count(int(kg/1000+0.5))) }
 
 func money(v float64, currency string) string {
+	if v < 1e6 {
+		return fmt.Sprintf("%.0f k %s", v/1e3, currency)
+	}
 	return fmt.Sprintf("%.1f M %s", v/1e6, currency)
 }
 
