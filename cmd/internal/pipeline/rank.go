@@ -11,6 +11,7 @@ import (
 
 	"kelvinrow/estimate"
 	"kelvinrow/estimate/building"
+	"kelvinrow/estimate/climate"
 	"kelvinrow/estimate/result"
 	"kelvinrow/ingest/finding"
 	"kelvinrow/rank"
@@ -157,13 +158,26 @@ func union(stored, own []finding.Finding) []finding.Finding {
 	return stored
 }
 
-// Explain says everything about one building.
+// Explain says everything about one building, in the climate of the portfolio's
+// last run unless another is named. It names that run if it rests on the same
+// climate and assumptions.
 func (s *Session) Explain(ctx context.Context, id string) (*estimate.Explanation, error) {
-	basis, err := s.basis()
+	b, _, err := s.Store.Building(ctx, s.Portfolio, id)
 	if err != nil {
 		return nil, err
 	}
-	b, _, err := s.Store.Building(ctx, s.Portfolio, id)
+	runs, err := s.Store.Runs(ctx, s.Portfolio)
+	if err != nil {
+		return nil, err
+	}
+	var last result.Run
+	if len(runs) > 0 {
+		last = runs[len(runs)-1]
+		if _, err := climate.Find(last.Climate, nil); err == nil && s.Climate == "" {
+			s.Climate = last.Climate // one from a file must be named again
+		}
+	}
+	basis, err := s.basis()
 	if err != nil {
 		return nil, err
 	}
@@ -172,12 +186,8 @@ func (s *Session) Explain(ctx context.Context, id string) (*estimate.Explanation
 		return nil, fmt.Errorf("explain %s: %w", id, err)
 	}
 	e.Portfolio = s.Portfolio
-	runs, err := s.Store.Runs(ctx, s.Portfolio)
-	if err != nil {
-		return nil, err
-	}
-	if len(runs) > 0 {
-		e.Run = runs[len(runs)-1].Number
+	if last.Climate == e.Climate.Name && last.Assumptions == e.Assumptions {
+		e.Run = last.Number
 	}
 	return e, nil
 }
