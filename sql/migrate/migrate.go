@@ -4,6 +4,7 @@
 package migrate
 
 import (
+	"bytes"
 	"context"
 	"crypto/sha256"
 	"embed"
@@ -46,6 +47,9 @@ func up(ctx context.Context, conn *pgx.Conn, steps []step) (err error) {
 		return fmt.Errorf("wait for other programs to migrate: %w", err)
 	}
 	defer func() {
+		if conn.IsClosed() {
+			return // the server dropped the lock with the connection
+		}
 		_, e := conn.Exec(context.WithoutCancel(ctx), "select pg_advisory_unlock($1)", int64(lockKey))
 		err = errors.Join(err, e)
 	}()
@@ -53,12 +57,12 @@ func up(ctx context.Context, conn *pgx.Conn, steps []step) (err error) {
 	if err != nil {
 		return fmt.Errorf("read applied migrations: %w", err)
 	}
-	if newest := len(steps); len(applied) > newest {
-		return fmt.Errorf("the database is at schema %d, newer than this program's %d: use a newer kelvinrow", len(applied), newest)
+	if newest := len(steps); len(applied) > 0 && applied[len(applied)-1].version > newest {
+		return fmt.Errorf("the database is at schema %d, newer than this program's %d: use a newer kelvinrow", applied[len(applied)-1].version, newest)
 	}
 	for i, s := range steps {
 		if i < len(applied) {
-			if applied[i] != s.checksum {
+			if applied[i].version != s.version || applied[i].checksum != s.checksum {
 				return fmt.Errorf("migration %s differs from the one applied to this database", s.name)
 			}
 			continue
@@ -70,17 +74,20 @@ func up(ctx context.Context, conn *pgx.Conn, steps []step) (err error) {
 	return nil
 }
 
-// done returns the checksums applied, in order.
-func done(ctx context.Context, conn *pgx.Conn) ([]string, error) {
+// done returns what was applied, in order.
+func done(ctx context.Context, conn *pgx.Conn) ([]step, error) {
 	var exists bool
 	if err := conn.QueryRow(ctx, "select to_regclass('kelvinrow.migration') is not null").Scan(&exists); err != nil || !exists {
 		return nil, err
 	}
-	rows, err := conn.Query(ctx, "select checksum from kelvinrow.migration order by version")
+	rows, err := conn.Query(ctx, "select version, name, checksum from kelvinrow.migration order by version")
 	if err != nil {
 		return nil, err
 	}
-	return pgx.CollectRows(rows, pgx.RowTo[string])
+	return pgx.CollectRows(rows, func(row pgx.CollectableRow) (s step, err error) {
+		err = row.Scan(&s.version, &s.name, &s.checksum)
+		return s, err
+	})
 }
 
 func apply(ctx context.Context, conn *pgx.Conn, s step) error {
@@ -109,6 +116,7 @@ func read(fsys fs.FS) ([]step, error) {
 		if err != nil {
 			return nil, err
 		}
+		text = bytes.ReplaceAll(text, []byte("\r\n"), []byte("\n")) // a checkout may have changed them
 		sum := sha256.Sum256(text)
 		steps[i] = step{v, name, string(text), hex.EncodeToString(sum[:])}
 	}

@@ -4,7 +4,9 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"math"
 	"slices"
+	"time"
 
 	"github.com/jackc/pgx/v5"
 
@@ -15,23 +17,36 @@ import (
 // chunk is how many records go to the server at once.
 const chunk = 4096
 
-// Load is a load in progress: one transaction, whole or not at all.
+// Load is a load in progress: one transaction, whole or not at all. It is not
+// safe for concurrent use, and the store serves nothing else meanwhile.
 type Load struct {
 	s         *Store
 	tx        pgx.Tx
 	portfolio string
-	number    int64
+	summary   LoadSummary
 
 	source, sheets int64 // numbers given last
+	open           bool  // a source is registered and takes sheets and findings
 	findings       int
-	sheet          *building.Sheet
-	pending        []building.Record
-	arena          []building.Value
-	summary        LoadSummary
+	failed         error // the transaction is lost
+
+	// Records are collected in one batch while the other is on its way to the
+	// server, so that reading and storing go on at the same time.
+	filling, sending batch
+	sent             chan error
+}
+
+// batch is a number of records, copied out of the caller's.
+type batch struct {
+	records []building.Record
+	values  []building.Value // of all records
 }
 
 // LoadSummary counts what a load brought.
-type LoadSummary struct{ Sources, Records int }
+type LoadSummary struct {
+	Number           int64 // of the load, in its portfolio
+	Sources, Records int
+}
 
 // Source is one loaded file.
 type Source struct {
@@ -48,8 +63,11 @@ func (s *Store) BeginLoad(ctx context.Context, portfolio string) (*Load, error) 
 		return nil, err
 	}
 	l := &Load{s: s, tx: tx, portfolio: portfolio}
-	err = tx.QueryRow(ctx, `insert into kelvinrow.portfolio (portfolio, loads) values ($1, 1)
-		on conflict (portfolio) do update set loads = kelvinrow.portfolio.loads + 1 returning loads`, portfolio).Scan(&l.number)
+	err = s.serialise(ctx, tx, "load", portfolio)
+	if err == nil {
+		err = tx.QueryRow(ctx, `insert into kelvinrow.portfolio (portfolio, loads) values ($1, 1)
+			on conflict (portfolio) do update set loads = kelvinrow.portfolio.loads + 1 returning loads`, portfolio).Scan(&l.summary.Number)
+	}
 	if err == nil {
 		err = tx.QueryRow(ctx, `select
 			(select coalesce(max(source), 0) from kelvinrow.source where portfolio = $1),
@@ -66,14 +84,24 @@ func (s *Store) BeginLoad(ctx context.Context, portfolio string) (*Load, error) 
 // where the same content is in the store already, under whatever name. Content
 // loaded earlier under the same name is replaced.
 func (l *Load) Source(ctx context.Context, file string, sha256 [32]byte, date string, bytes int64) (already bool, err error) {
-	if err := l.flush(ctx); err != nil {
+	if err := l.settle(ctx); err != nil {
 		return false, err
 	}
+	file = clean(file)
+	l.open = false
+	already, err = l.register(ctx, file, sha256, date, bytes)
+	if err != nil {
+		return false, fmt.Errorf("store source %s: %w", file, err)
+	}
+	l.open = !already
+	return already, nil
+}
+
+func (l *Load) register(ctx context.Context, file string, sha256 [32]byte, date string, bytes int64) (already bool, err error) {
 	err = l.tx.QueryRow(ctx, "select exists (select from kelvinrow.source where portfolio = $1 and sha256 = $2)", l.portfolio, sha256[:]).Scan(&already)
 	if err != nil || already {
 		return already, err
 	}
-	file = clean(file)
 	// Sheets and findings go with their source; records have no foreign key of
 	// their own, which would be checked for each of a million rows.
 	_, err = l.tx.Exec(ctx, `delete from kelvinrow.record r using kelvinrow.sheet h, kelvinrow.source s
@@ -89,27 +117,34 @@ func (l *Load) Source(ctx context.Context, file string, sha256 [32]byte, date st
 	l.findings = 0
 	l.summary.Sources++
 	_, err = l.tx.Exec(ctx, `insert into kelvinrow.source (portfolio, source, file, sha256, file_date, bytes, load)
-		values ($1, $2, $3, $4, $5, $6, $7)`, l.portfolio, l.source, file, sha256[:], date, bytes, l.number)
+		values ($1, $2, $3, $4, $5, $6, $7)`, l.portfolio, l.source, file, sha256[:], date, bytes, l.summary.Number)
 	return false, err
 }
 
+var errNoSource = errors.New("no source is being loaded")
+
 // Sheet registers a sheet of the current source and gives it its numbers.
 func (l *Load) Sheet(ctx context.Context, sh *building.Sheet) error {
-	if err := l.flush(ctx); err != nil {
+	if err := l.settle(ctx); err != nil {
 		return err
 	}
+	if !l.open {
+		return errNoSource
+	}
 	l.sheets++
-	sh.ID, sh.LoadID = l.sheets, l.number
+	sh.ID, sh.LoadID = l.sheets, l.summary.Number
 	columns := map[string]string{}
 	for f, letters := range sh.Columns {
 		if letters != "" {
 			columns[building.Field(f).Key()] = letters
 		}
 	}
-	l.sheet = sh
 	_, err := l.tx.Exec(ctx, `insert into kelvinrow.sheet (portfolio, sheet, source, name, file_date, load, columns)
-		values ($1, $2, $3, $4, $5, $6, $7)`, l.portfolio, sh.ID, l.source, clean(sh.Name), sh.FileDate, l.number, columns)
-	return err
+		values ($1, $2, $3, $4, $5, $6, $7)`, l.portfolio, sh.ID, l.source, clean(sh.Name), sh.FileDate, l.summary.Number, columns)
+	if err != nil {
+		return fmt.Errorf("store sheet %q: %w", sh.Name, err)
+	}
+	return nil
 }
 
 // Add adds a record. The record is copied: the caller may use it again.
@@ -117,62 +152,80 @@ func (l *Load) Add(ctx context.Context, r *building.Record) error {
 	if r.Sheet == nil || r.Sheet.ID == 0 {
 		return errors.New("a record needs a registered sheet")
 	}
-	if len(l.pending) == chunk || (len(l.pending) > 0 && l.pending[0].Sheet != r.Sheet) {
-		if err := l.flush(ctx); err != nil {
+	if len(l.filling.records) == chunk {
+		if err := l.send(ctx); err != nil {
 			return err
 		}
 	}
-	from := len(l.arena)
-	l.arena = append(l.arena, r.Values...)
+	b := &l.filling
+	from := len(b.values)
+	b.values = append(b.values, r.Values...)
 	c := *r
-	c.Values = l.arena[from:len(l.arena):len(l.arena)]
-	l.pending = append(l.pending, c)
+	c.Values = b.values[from:len(b.values):len(b.values)]
+	b.records = append(b.records, c)
 	return nil
 }
 
-func (l *Load) flush(ctx context.Context) error {
-	if len(l.pending) == 0 {
-		return nil
+// send sends the collected records on their way, once those before have arrived.
+func (l *Load) send(ctx context.Context) error {
+	if err := l.wait(); err != nil || len(l.filling.records) == 0 {
+		return err
 	}
-	var present [building.NumFields]bool
-	for i := range l.pending {
-		for _, v := range l.pending[i].Values {
-			present[v.Field] = true
-		}
+	l.filling, l.sending = l.sending, l.filling
+	l.filling.records, l.filling.values = l.filling.records[:0], l.filling.values[:0]
+	l.sent = make(chan error, 1)
+	go func(sent chan<- error) {
+		_, err := l.s.copyInto(ctx, l.tx, "record", recordRows(l.portfolio, l.sending.records))
+		sent <- err
+	}(l.sent)
+	return nil
+}
+
+// wait waits until the records on their way have arrived: the connection does
+// one thing at a time.
+func (l *Load) wait() error {
+	if l.sent == nil {
+		return l.failed
 	}
-	rows := newRecordRows(l.portfolio, l.pending, &present)
-	n, err := l.s.copyInto(ctx, l.tx, "record", rows.columns, rows)
+	err := <-l.sent
+	l.sent = nil
 	if err != nil {
-		return fmt.Errorf("store records: %w", err)
+		l.failed = fmt.Errorf("store records: %w", err)
+		return l.failed
 	}
-	l.summary.Records += int(n)
-	l.pending = l.pending[:0]
-	l.arena = l.arena[:0]
+	l.summary.Records += len(l.sending.records)
 	return nil
 }
 
-// recordRows gives records to COPY, only in the columns that have values.
-type recordRows struct {
-	columns   []string
-	portfolio string
-	records   []building.Record
-	at        [building.NumFields]int // position of each field's first column
-	next      int
-	row       []any
+// settle brings all records to the server.
+func (l *Load) settle(ctx context.Context) error {
+	if err := l.send(ctx); err != nil {
+		return err
+	}
+	return l.wait()
 }
 
 var headColumns = []string{"portfolio", "building", "sheet", "row_number", "survey_date", "kind", "other_kinds"}
 
-func newRecordRows(portfolio string, records []building.Record, present *[building.NumFields]bool) *recordRows {
-	r := &recordRows{columns: slices.Clone(headColumns), portfolio: portfolio, records: records}
-	for f, yes := range present {
-		if yes {
-			r.at[f] = len(r.columns)
-			r.columns = append(r.columns, fieldColumns(building.Field(f))...)
+// recordRows are records for COPY, only in the columns that have values.
+func recordRows(portfolio string, records []building.Record) *rows {
+	var present [building.NumFields]bool
+	for i := range records {
+		for _, v := range records[i].Values {
+			present[v.Field] = true
 		}
 	}
-	r.row = make([]any, len(r.columns))
-	return r
+	columns := slices.Clone(headColumns)
+	var fields []building.Field
+	for f, yes := range present {
+		if yes {
+			fields = append(fields, building.Field(f))
+			columns = append(columns, fieldColumns(building.Field(f))...)
+		}
+	}
+	return &rows{columns: columns, n: len(records), encode: func(e *encoder, i int) error {
+		return encodeRecord(e, portfolio, &records[i], fields)
+	}}
 }
 
 // fieldColumns are the columns of one field.
@@ -183,36 +236,61 @@ func fieldColumns(f building.Field) []string {
 	return []string{f.Key()}
 }
 
-func (r *recordRows) Next() bool { r.next++; return r.next <= len(r.records) }
-
-func (r *recordRows) Err() error { return nil }
-
-func (r *recordRows) Values() ([]any, error) {
-	rec := &r.records[r.next-1]
-	clear(r.row)
-	r.row[0], r.row[1], r.row[2], r.row[3] = r.portfolio, clean(rec.Building), rec.Sheet.ID, int32(rec.Row)
-	if rec.SurveyDate != "" {
-		r.row[4] = rec.SurveyDate
+func encodeRecord(e *encoder, portfolio string, r *building.Record, fields []building.Field) error {
+	e.text(portfolio)
+	e.text(r.Building)
+	e.bigint(r.Sheet.ID)
+	e.integer(int32(r.Row))
+	if r.SurveyDate == "" {
+		e.null()
+	} else {
+		e.text(r.SurveyDate)
 	}
-	kind, others := kinds(rec.Values)
-	r.row[5] = kind.String()
-	if others != nil {
-		r.row[6] = others
+	kind, others := kinds(r.Values)
+	e.text(kind.String())
+	if others == nil {
+		e.null()
+	} else {
+		e.texts(others)
 	}
-	for _, v := range rec.Values {
-		i := r.at[v.Field]
-		switch v.Field.Info().Type {
-		case building.Text, building.Word:
-			r.row[i] = clean(v.Text)
-		case building.Number:
-			r.row[i] = v.Number
-		case building.YesNo:
-			r.row[i] = v.Number != 0
-		case building.Year:
-			r.row[i], r.row[i+1] = int16(v.Low), int16(v.High)
+	var at [building.NumFields]int // position in Values plus one; a later value of a field counts
+	for i, v := range r.Values {
+		at[v.Field] = i + 1
+	}
+	for _, f := range fields {
+		if err := encodeValue(e, r, f, at[f]-1); err != nil {
+			return err
 		}
 	}
-	return r.row, nil
+	return nil
+}
+
+func encodeValue(e *encoder, r *building.Record, f building.Field, at int) error {
+	t := f.Info().Type
+	if at < 0 {
+		e.null()
+		if t == building.Year {
+			e.null()
+		}
+		return nil
+	}
+	v := &r.Values[at]
+	switch t {
+	case building.Text, building.Word:
+		e.text(v.Text)
+	case building.Number:
+		e.float(v.Number)
+	case building.YesNo:
+		e.boolean(v.Number != 0)
+	case building.Year:
+		low, high := int16(v.Low), int16(v.High)
+		if v.Low < 0 || v.High > math.MaxInt16 || float64(low) != v.Low || float64(high) != v.High {
+			return fmt.Errorf("building %s, row %d: %s %g to %g is no span of years", r.Building, r.Row, f, v.Low, v.High)
+		}
+		e.smallint(low)
+		e.smallint(high)
+	}
+	return nil
 }
 
 // kinds returns the commonest kind of the values, and the others by field.
@@ -228,6 +306,9 @@ func kinds(values []building.Value) (building.Kind, []string) {
 		}
 	}
 	var others []string
+	if n[common] == len(values) {
+		return common, nil
+	}
 	for _, v := range values {
 		if v.Kind != common {
 			others = append(others, v.Field.Key()+"="+v.Kind.String())
@@ -236,19 +317,32 @@ func kinds(values []building.Value) (building.Kind, []string) {
 	return common, others
 }
 
+var findingColumns = []string{"portfolio", "source", "number", "severity", "check_name", "file", "sheet", "row_number",
+	"column_letters", "field", "building", "raw", "message", "fix"}
+
 // Findings stores findings of the current source.
 func (l *Load) Findings(ctx context.Context, fs []finding.Finding) error {
-	if err := l.flush(ctx); err != nil {
+	if err := l.settle(ctx); err != nil {
 		return err
 	}
-	columns := []string{"portfolio", "source", "number", "severity", "check_name", "file", "sheet", "row_number",
-		"column_letters", "field", "building", "raw", "message", "fix"}
-	rows := pgx.CopyFromSlice(len(fs), func(i int) ([]any, error) {
+	if !l.open {
+		return errNoSource
+	}
+	r := &rows{columns: findingColumns, n: len(fs), encode: func(e *encoder, i int) error {
 		f := &fs[i]
-		return []any{l.portfolio, l.source, int32(l.findings + i + 1), f.Severity.String(), clean(f.Check), clean(f.File), clean(f.Sheet),
-			int32(f.Row), clean(f.Column), clean(f.Field), clean(f.Building), clean(f.Raw), clean(f.Text), clean(f.Fix)}, nil
-	})
-	if _, err := l.s.copyInto(ctx, l.tx, "finding", columns, rows); err != nil {
+		e.text(l.portfolio)
+		e.bigint(l.source)
+		e.integer(int32(l.findings + i + 1))
+		for _, s := range [...]string{f.Severity.String(), f.Check, f.File, f.Sheet} {
+			e.text(s)
+		}
+		e.integer(int32(f.Row))
+		for _, s := range [...]string{f.Column, f.Field, f.Building, f.Raw, f.Text, f.Fix} {
+			e.text(s)
+		}
+		return nil
+	}}
+	if _, err := l.s.copyInto(ctx, l.tx, "finding", r); err != nil {
 		return fmt.Errorf("store findings: %w", err)
 	}
 	l.findings += len(fs)
@@ -257,16 +351,23 @@ func (l *Load) Findings(ctx context.Context, fs []finding.Finding) error {
 
 // Commit makes the load permanent.
 func (l *Load) Commit(ctx context.Context) (LoadSummary, error) {
-	if err := l.flush(ctx); err != nil {
+	if err := l.settle(ctx); err != nil {
 		return LoadSummary{}, err
 	}
+	l.s.busy = false
 	if err := l.tx.Commit(ctx); err != nil {
 		return LoadSummary{}, fmt.Errorf("commit the load: %w", err)
 	}
 	return l.summary, nil
 }
 
-// Rollback undoes the load; after Commit it does nothing.
+// Rollback undoes the load; after Commit it does nothing. It works also when the
+// command's context is over.
 func (l *Load) Rollback() {
-	_ = l.tx.Rollback(context.Background()) // the command's context may be over
+	_ = l.wait() // what went wrong is undone
+	ctx, cancel := context.WithTimeout(context.Background(), 10*time.Second)
+	defer cancel()
+	if err := l.tx.Rollback(ctx); !errors.Is(err, pgx.ErrTxClosed) {
+		l.s.busy = false
+	}
 }

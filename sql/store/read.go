@@ -2,10 +2,11 @@ package store
 
 import (
 	"context"
-	"encoding/binary"
+	"crypto/sha256"
+	"encoding/hex"
 	"errors"
 	"fmt"
-	"math"
+	"slices"
 	"strings"
 
 	"github.com/jackc/pgx/v5"
@@ -14,21 +15,6 @@ import (
 	"kelvinrow/estimate/building"
 	"kelvinrow/ingest/finding"
 )
-
-// NotFoundError says that a portfolio has no such building, and which ids are
-// like it.
-type NotFoundError struct {
-	Portfolio, ID string
-	Near          []string
-}
-
-func (e *NotFoundError) Error() string {
-	s := fmt.Sprintf("portfolio %q has no building %q", e.Portfolio, e.ID)
-	if len(e.Near) > 0 {
-		s += "; there are: " + strings.Join(e.Near, ", ")
-	}
-	return s
-}
 
 // Count returns how many buildings a portfolio has.
 func (s *Store) Count(ctx context.Context, portfolio string) (n int, err error) {
@@ -39,7 +25,8 @@ func (s *Store) Count(ctx context.Context, portfolio string) (n int, err error) 
 }
 
 // Buildings yields the buildings of a portfolio in byte order of their ids, each
-// merged from all records about it.
+// merged from all records about it. They come from one snapshot, held until the
+// last is taken.
 func (s *Store) Buildings(ctx context.Context, portfolio string, yield func(*building.Building) error) error {
 	return s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
 		var group []building.Record
@@ -51,7 +38,7 @@ func (s *Store) Buildings(ctx context.Context, portfolio string, yield func(*bui
 			group = group[:0]
 			return err
 		}
-		err := records(ctx, tx, portfolio, "", func(r building.Record) error {
+		err := records(ctx, tx, portfolio, nil, func(r building.Record) error {
 			if len(group) > 0 && group[0].Building != r.Building {
 				if err := flush(); err != nil {
 					return err
@@ -67,26 +54,35 @@ func (s *Store) Buildings(ctx context.Context, portfolio string, yield func(*bui
 	})
 }
 
+// InputsHash is a hash, in hex, of all that an estimate can see of a portfolio.
+// Loads that come to the same buildings come to the same hash.
+func (s *Store) InputsHash(ctx context.Context, portfolio string) (string, error) {
+	h := sha256.New()
+	err := s.Buildings(ctx, portfolio, func(b *building.Building) error {
+		b.WriteHash(h)
+		return nil
+	})
+	if err != nil {
+		return "", err
+	}
+	return hex.EncodeToString(h.Sum(nil)), nil
+}
+
 // Building returns one building and the records it is merged from; a
 // *NotFoundError where there is none.
 func (s *Store) Building(ctx context.Context, portfolio, id string) (*building.Building, []building.Record, error) {
+	id = clean(id)
 	var found []building.Record
 	var near []string
 	err := s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
-		err := records(ctx, tx, portfolio, id, func(r building.Record) error {
+		err := records(ctx, tx, portfolio, &id, func(r building.Record) error {
 			found = append(found, r)
 			return nil
 		})
 		if err != nil || len(found) > 0 {
 			return err
 		}
-		rows, err := tx.Query(ctx, `select distinct building from kelvinrow.record
-			where portfolio = $1 and (lower(building) = lower($2) or building like $3) order by building limit 5`,
-			portfolio, id, likePrefix(id))
-		if err != nil {
-			return err
-		}
-		near, err = pgx.CollectRows(rows, pgx.RowTo[string])
+		near, err = nearIDs(ctx, tx, portfolio, id)
 		return err
 	})
 	if err != nil {
@@ -98,35 +94,32 @@ func (s *Store) Building(ctx context.Context, portfolio, id string) (*building.B
 	return building.Merge(id, found), found, nil
 }
 
-// likePrefix matches ids that begin like the given one, less its last letters.
-func likePrefix(id string) string {
-	r := []rune(id)
-	r = r[:max(1, len(r)-2)]
-	if len(id) == 0 {
-		return ""
+// recordColumns are the columns a record is read from.
+var recordColumns = func() []string {
+	columns := slices.Clone(headColumns[1:])
+	for f := range building.NumFields {
+		columns = append(columns, fieldColumns(building.Field(f))...)
 	}
-	return strings.NewReplacer(`\`, `\\`, `%`, `\%`, `_`, `\_`).Replace(string(r)) + "%"
-}
+	return columns
+}()
+
+// binaryResults asks for the values as the decoders expect them.
+var binaryResults = pgx.QueryResultFormats{pgx.BinaryFormatCode}
+
+var errNotBinary = errors.New("the connection gives text where binary values are needed: leave default_query_exec_mode out of the database URL")
 
 // records reads the records of a portfolio, or of one building of it, in order
 // of building, sheet and row.
-func records(ctx context.Context, tx pgx.Tx, portfolio, id string, yield func(building.Record) error) error {
+func records(ctx context.Context, tx pgx.Tx, portfolio string, id *string, yield func(building.Record) error) error {
 	sheets, err := readSheets(ctx, tx, portfolio)
 	if err != nil {
 		return err
 	}
-	columns := []string{"building", "sheet", "row_number", "survey_date", "kind", "other_kinds"}
-	for f := range building.NumFields {
-		columns = append(columns, fieldColumns(building.Field(f))...)
-	}
-	query := "select " + strings.Join(columns, ", ") + " from kelvinrow.record where portfolio = $1"
-	args := []any{pgx.QueryResultFormatsByOID{
-		pgtype.TextOID: pgx.BinaryFormatCode, pgtype.TextArrayOID: pgx.BinaryFormatCode, pgtype.Float8OID: pgx.BinaryFormatCode, pgtype.BoolOID: pgx.BinaryFormatCode,
-		pgtype.Int2OID: pgx.BinaryFormatCode, pgtype.Int4OID: pgx.BinaryFormatCode, pgtype.Int8OID: pgx.BinaryFormatCode,
-	}, portfolio}
-	if id != "" {
+	query := "select " + columnList(recordColumns) + " from kelvinrow.record where portfolio = $1"
+	args := []any{binaryResults, portfolio}
+	if id != nil {
 		query += " and building = $2"
-		args = append(args, id)
+		args = append(args, *id)
 	}
 	rows, err := tx.Query(ctx, query+" order by building, sheet, row_number", args...)
 	if err != nil {
@@ -135,6 +128,9 @@ func records(ctx context.Context, tx pgx.Tx, portfolio, id string, yield func(bu
 	defer rows.Close()
 	d := decoder{types: tx.Conn().TypeMap(), sheets: sheets, interned: map[string]string{}}
 	for rows.Next() {
+		if rows.FieldDescriptions()[0].Format != pgtype.BinaryFormatCode {
+			return errNotBinary
+		}
 		r, err := d.record(rows.RawValues())
 		if err != nil {
 			return fmt.Errorf("read a record: %w", err)
@@ -166,115 +162,6 @@ func readSheets(ctx context.Context, tx pgx.Tx, portfolio string) (map[int64]*bu
 		return nil
 	})
 	return sheets, err
-}
-
-// decoder turns the binary columns of a record into values, without the
-// reflection that scanning sixty columns of a million rows would cost.
-type decoder struct {
-	types    *pgtype.Map
-	sheets   map[int64]*building.Sheet
-	interned map[string]string
-}
-
-var errShape = errors.New("a column is not of the size its type has")
-
-func (d *decoder) record(raw [][]byte) (building.Record, error) {
-	r := building.Record{Building: string(raw[0])}
-	if len(raw[1]) != 8 || len(raw[2]) != 4 {
-		return r, errShape
-	}
-	sheet := int64(binary.BigEndian.Uint64(raw[1]))
-	r.Sheet = d.sheets[sheet]
-	if r.Sheet == nil {
-		return r, fmt.Errorf("building %s: sheet %d is missing", r.Building, sheet)
-	}
-	r.Row = int(binary.BigEndian.Uint32(raw[2]))
-	r.SurveyDate = d.intern(raw[3])
-	kind, ok := building.KindByWord(d.intern(raw[4]))
-	if !ok {
-		return r, fmt.Errorf("building %s: kind %q is unknown", r.Building, raw[4])
-	}
-	n := 0
-	for _, b := range raw[6:] {
-		if b != nil {
-			n++
-		}
-	}
-	r.Values = make([]building.Value, 0, n)
-	i := 6
-	for f := range building.NumFields {
-		v := building.Value{Field: building.Field(f), Kind: kind}
-		b := raw[i]
-		i++
-		switch building.Field(f).Info().Type {
-		case building.Text:
-			v.Text = string(b)
-		case building.Word:
-			v.Text = d.intern(b)
-		case building.Number:
-			if b != nil && len(b) != 8 {
-				return r, errShape
-			}
-			if b != nil {
-				v.Number = math.Float64frombits(binary.BigEndian.Uint64(b))
-			}
-		case building.YesNo:
-			if len(b) == 1 && b[0] != 0 {
-				v.Number = 1
-			}
-		case building.Year:
-			to := raw[i]
-			i++
-			if b == nil || to == nil {
-				continue
-			}
-			if len(b) != 2 || len(to) != 2 {
-				return r, errShape
-			}
-			v.Low = float64(int16(binary.BigEndian.Uint16(b)))
-			v.High = float64(int16(binary.BigEndian.Uint16(to)))
-			v.Number = (v.Low + v.High) / 2
-		}
-		if b != nil {
-			r.Values = append(r.Values, v)
-		}
-	}
-	return r, d.otherKinds(&r, raw[5])
-}
-
-// otherKinds applies the exceptions to the row's kind.
-func (d *decoder) otherKinds(r *building.Record, raw []byte) error {
-	if raw == nil {
-		return nil
-	}
-	var others []string
-	if err := d.types.Scan(pgtype.TextArrayOID, pgx.BinaryFormatCode, raw, &others); err != nil {
-		return err
-	}
-	for _, o := range others {
-		key, word, _ := strings.Cut(o, "=")
-		f, ok1 := building.FieldByKey(key)
-		k, ok2 := building.KindByWord(word)
-		if !ok1 || !ok2 {
-			return fmt.Errorf("building %s: kind %q is unknown", r.Building, o)
-		}
-		for i := range r.Values {
-			if r.Values[i].Field == f {
-				r.Values[i].Kind = k
-			}
-		}
-	}
-	return nil
-}
-
-// intern keeps one copy of each of the few words that fill a column.
-func (d *decoder) intern(b []byte) string {
-	if s, ok := d.interned[string(b)]; ok {
-		return s
-	}
-	s := string(b)
-	d.interned[s] = s
-	return s
 }
 
 // Findings returns what the loads of a portfolio found, in order of place.
@@ -309,4 +196,19 @@ func (s *Store) Sources(ctx context.Context, portfolio string) (out []Source, er
 		return err
 	})
 	return out, err
+}
+
+// NotFoundError says that a portfolio has no such building, and which ids are
+// like it.
+type NotFoundError struct {
+	Portfolio, ID string
+	Near          []string
+}
+
+func (e *NotFoundError) Error() string {
+	s := fmt.Sprintf("portfolio %q has no building %q", e.Portfolio, e.ID)
+	if len(e.Near) > 0 {
+		s += "; did you mean " + strings.Join(e.Near, ", ") + "?"
+	}
+	return s
 }
