@@ -17,7 +17,7 @@ import (
 
 func TestCrashedServerIsReplaced(t *testing.T) {
 	t.Parallel()
-	dir := testDir(t)
+	dir := madeDir(t)
 	c := mustStart(t, dir)
 	conn, err := pgx.Connect(t.Context(), c.URL()) // whose backend outlives the postmaster for a moment
 	if err != nil {
@@ -40,7 +40,7 @@ func TestCrashedServerIsReplaced(t *testing.T) {
 
 func TestStalePidFileAndSocket(t *testing.T) {
 	t.Parallel()
-	dir := testDir(t)
+	dir := madeDir(t)
 	c := mustStart(t, dir)
 	mustRelease(t, c)
 	// As after a power cut: the numbers are those of living processes that are
@@ -69,7 +69,7 @@ func TestStalePidFileAndSocket(t *testing.T) {
 // Two servers on the same data would ruin it.
 func TestNeverASecondServerOnTheSameData(t *testing.T) {
 	t.Parallel()
-	dir := testDir(t)
+	dir := madeDir(t)
 	link := filepath.Join(testDir(t), "link")
 	if err := os.Symlink(dir, link); err != nil {
 		t.Fatal(err)
@@ -137,7 +137,7 @@ func TestEnvironmentOfPostgresClientsIsNotFollowed(t *testing.T) {
 	} {
 		t.Setenv(name, value)
 	}
-	c := mustStart(t, testDir(t))
+	c := mustStart(t, madeDir(t))
 	if got := query(t, c, "select current_user || ' ' || current_database()"); got != "kelvinrow postgres" {
 		t.Errorf("connected as %s", got)
 	}

@@ -73,17 +73,19 @@ func TestLoadsOfOnePortfolioWaitForEachOther(t *testing.T) {
 	must(t, err)
 	l.Rollback()
 	began := make(chan error, 1)
-	go func() {
+	second := func() error {
 		l, err := other.BeginLoad(context.Background(), "p")
-		if err == nil {
-			defer l.Rollback()
-			var already bool
-			if already, err = l.Source(context.Background(), "b.csv", [32]byte{1}, "", 1); err == nil && !already {
-				err = errors.New("does not see what the first load brought")
-			}
+		if err != nil {
+			return err
 		}
-		began <- err
-	}()
+		defer l.Rollback()
+		already, err := l.Source(context.Background(), "b.csv", [32]byte{1}, "", 1)
+		if err == nil && !already {
+			err = errors.New("does not see what the first load brought")
+		}
+		return err
+	}
+	go func() { began <- second() }()
 	select {
 	case err := <-began:
 		t.Fatalf("a second load began in the middle of the first: %v", err)
