@@ -35,7 +35,7 @@ folder elsewhere.`,
 			},
 		},
 		&cobra.Command{
-			Use: "stop", Short: "Stop the private Postgres, also when a command left it behind",
+			Use: "stop", Short: "Stop the private Postgres at once, also under a command that uses it or left it behind",
 			Example: "  kelvinrow store stop",
 			Args:    args(cobra.NoArgs),
 			RunE: func(c *cobra.Command, _ []string) error {
