@@ -1,6 +1,9 @@
 package cell
 
-import "strings"
+import (
+	"regexp"
+	"strings"
+)
 
 // Unit is a unit of measure: Factor times a value in it is the value in Base.
 type Unit struct {
@@ -78,6 +81,9 @@ var unitLetters = strings.NewReplacer("²", "2", "³", "3", "^2", "2", "^3", "3"
 func ParseUnit(s string) (Unit, bool) {
 	s = unitLetters.Replace(strings.ToLower(strings.TrimSpace(s)))
 	s = strings.Trim(s, ",;: ")
+	for _, at := range []string{"@50pa", "at50pa", "bei50pa", "à50pa", "bij50pa", "vid50pa", "ved50pa", "a50pa"} {
+		s = strings.TrimSuffix(s, at)
+	}
 	if u, ok := unitByWriting[s]; ok {
 		return u, true
 	}
@@ -89,6 +95,27 @@ func ParseUnit(s string) (Unit, bool) {
 	}
 	return Unit{}, false
 }
+
+// reRatio matches what is counted by something else, such as kWh/m2 or €/m².
+var reRatio = regexp.MustCompile(`([\p{L}€$£%][\p{L}\d²³.]*)\s*(?:/| per | pro | par )\s*\(?\s*([\p{L}][\p{L}\d²³]*)`)
+
+// ForeignUnit reports whether s names a quantity by a unit of measure that
+// ParseUnit does not know: "kWh/m2" is no energy, nor is "€/m²" an area.
+func ForeignUnit(s string) bool {
+	for _, m := range reRatio.FindAllStringSubmatch(strings.ToLower(s), -1) {
+		_, over := ParseUnit(m[1])
+		_, under := ParseUnit(m[2])
+		if area, ok := strings.CutSuffix(unitLetters.Replace(m[2]), "a"); !under && ok {
+			_, under = ParseUnit(area) // kWh/m²a
+		}
+		if under && m[2] != "m" || over && !perYear[m[2]] && len(m[1]) > 1 {
+			return true
+		}
+	}
+	return false
+}
+
+var perYear = map[string]bool{"a": true, "yr": true, "year": true, "jahr": true, "an": true, "jaar": true, "år": true, "ar": true, "ano": true, "año": true, "y": true}
 
 // UnitNamed returns the unit that Unit.Name names.
 func UnitNamed(name string) (Unit, bool) {

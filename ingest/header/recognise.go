@@ -76,6 +76,9 @@ func init() {
 		info := building.Field(i).Info()
 		rows = append(rows, []string{info.Key, "", info.Label, ""}, []string{info.Key, "", info.Key, ""})
 	}
+	for f := range byUnit {
+		elements[f.Key()] = true
+	}
 	for _, k := range moreKeys {
 		rows = append(rows, []string{k, "", k, ""})
 	}
@@ -103,6 +106,9 @@ var (
 	certified = regexp.MustCompile(`\b(certified|certificate|zertifiziert|energieausweis|ausweis|epc|certifiee?|dpe|gecertificeerd|energielabel|certificad[oa]|energideklaration|energimarke)\b`)
 )
 
+// share matches what makes of a whole a part of it or a mean: no area of a building.
+var share = regexp.MustCompile(`\b(per|pro|je|average|mean|avg|durchschnittliche?r?|mittlere?r?|moyenne?|par|gemiddelde?|genomsnittlig|snitt|gennemsnitlig|gjennomsnittlig|medi[ao]|promedio)\b`)
+
 // Recognise lists what a column with this header may be, the closest first.
 func Recognise(header string, ev Evidence) []Candidate {
 	h := parse(header)
@@ -118,6 +124,15 @@ func Recognise(header string, ev Evidence) []Candidate {
 		}
 		if len(found) > 0 {
 			break
+		}
+	}
+	if len(found) == 0 || h.remark && elements[found[0].Key] {
+		// "Windows (year)" is more than "Windows".
+		for _, v := range append([]string{h.whole}, h.variants...) {
+			if c, ok := h.compose(v, ev); ok {
+				found = []Candidate{c}
+				break
+			}
 		}
 	}
 	if len(found) == 0 {
@@ -153,9 +168,12 @@ func senseRank(sense string) int {
 type parsed struct {
 	variants []string // folded, the fullest first
 	unit     cell.Unit
+	foreign  bool // names a unit that is not known, such as kWh/m2
 	kind     building.Kind
 	year     int
 	fold     string
+	whole    string // folded, without unit, year and who says so, brackets opened
+	remark   bool   // has brackets with words in them
 }
 
 func parse(header string) parsed {
@@ -173,12 +191,21 @@ func parse(header string) parsed {
 	if m := reYear.FindStringSubmatch(raw); m != nil {
 		p.year, _ = strconv.Atoi(m[1])
 	}
+	// A unit may hold brackets of its own: "SFP kW/(m3/s)", "U [W/(m2K)]".
+	if last := raw[strings.LastIndexByte(raw, ' ')+1:]; strings.LastIndexAny(last, "([") > 0 {
+		raw = p.cutUnit(raw)
+	}
+	open := raw
 	bare := reBracket.ReplaceAllStringFunc(raw, func(b string) string {
 		if u, ok := cell.ParseUnit(b[1 : len(b)-1]); ok && p.unit.Name == "" {
 			p.unit = u
+			open = strings.Replace(open, b, " ", 1)
+		} else if cell.Fold(b) != "" {
+			p.remark = true
 		}
 		return " "
 	})
+	p.foreign = p.unit.Name == "" && cell.ForeignUnit(raw)
 	add := func(s string) {
 		f := cell.Fold(s)
 		for _, v := range p.variants {
@@ -191,6 +218,9 @@ func parse(header string) parsed {
 		}
 	}
 	stripped := p.cutUnit(bare)
+	if p.unit.Name == "" { // "Gas kWh 2022/23"
+		stripped = p.cutUnit(strings.Join(strings.Fields(reYear.ReplaceAllString(bare, " ")), " "))
+	}
 	add(bare)
 	add(stripped)
 	if p.unit.Name == "" {
@@ -202,6 +232,7 @@ func parse(header string) parsed {
 		add(reYear.ReplaceAllString(t, " "))
 		add(trimStops(reYear.ReplaceAllString(t, " ")))
 	}
+	p.whole = cell.Fold(reYear.ReplaceAllString(certified.ReplaceAllString(measured.ReplaceAllString(cell.Fold(p.cutUnit(open)), " "), " "), " "))
 	return p
 }
 
@@ -273,6 +304,9 @@ func (h *parsed) loose(ev Evidence) []Candidate {
 	var found []Candidate
 	padded := " " + h.variants[min(1, len(h.variants)-1)] + " "
 	full := " " + h.fold + " "
+	if h.mixed() {
+		return nil
+	}
 	size := 0
 	for _, e := range loose {
 		if size > 0 && len(e.folded) < size {
@@ -291,6 +325,9 @@ func (h *parsed) loose(ev Evidence) []Candidate {
 	}
 	return found
 }
+
+// elements are the fields whose headers name a part of the envelope.
+var elements = map[string]bool{}
 
 // An element named without more is its area, its U-value or its year of
 // renewal where the unit or the cells say so.
@@ -331,6 +368,9 @@ func (h *parsed) candidate(e entry, rank int, ev Evidence) (Candidate, bool) {
 	info := f.Info()
 	switch info.Type {
 	case building.Number:
+		if h.foreign || rank >= looseRank && info.Group != building.Fabric && share.MatchString(h.fold) {
+			return c, false
+		}
 		if h.unit.Name != "" {
 			u, ok := unitFor(f, h.unit)
 			if !ok {

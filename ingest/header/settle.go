@@ -80,6 +80,8 @@ func Settle(t *Table, mapped []Entry) *Plan {
 		c := &t.Columns[i]
 		if c.Key == "" && len(c.candidates) > 0 && c.candidates[0].Key == ignoredKey {
 			c.How = "known, and not needed"
+		} else if c.Key == "" && c.How == "" && cell.ForeignUnit(c.Header) {
+			c.How = "its unit is none that a field has"
 		}
 	}
 	for _, k := range Keys() {
