@@ -2,6 +2,7 @@ package header
 
 import (
 	"fmt"
+	"sort"
 	"strings"
 
 	"kelvinrow/estimate/building"
@@ -34,7 +35,7 @@ func (c *Column) Letters() string { return sheet.ColumnLetters(c.Index) }
 
 // Table is the layout of one sheet.
 type Table struct {
-	Row      int // of the header; the lower one of two
+	Row      int // of the header, the lower one of two; 0 without one
 	DataFrom int // first row below header and units
 	Columns  []Column
 	Known    int // columns recognised
@@ -42,7 +43,8 @@ type Table struct {
 
 // Find looks for the header among the first rows: the row most of whose cells
 // are recognised. It reports ok false when no row has two such cells and no
-// mapping names one.
+// mapping names one. Where a mapping gives letters, a table needs no header:
+// then Row is 0.
 func Find(lines []Line, merges []sheet.Merge, evidence []Evidence, mapped []Entry) (Table, bool) {
 	best, bestScore := Table{}, 0
 	for i := range lines {
@@ -54,7 +56,57 @@ func Find(lines []Line, merges []sheet.Merge, evidence []Evidence, mapped []Entr
 			best, bestScore = t, score
 		}
 	}
-	return best, bestScore >= 4
+	if bestScore >= 4 {
+		return best, true
+	}
+	return bare(lines, mapped)
+}
+
+// bare finds a table without a header by the letters of a mapping: from the
+// first row with an id and with numbers where numbers belong.
+func bare(lines []Line, mapped []Entry) (Table, bool) {
+	at := map[int]Entry{}
+	var columns []int
+	id := false
+	for _, e := range mapped {
+		if c, ok := sheet.ColumnIndex(e.Column); ok && !e.Fixed && !e.Unread {
+			at[c] = e
+			columns = append(columns, c)
+			id = id || e.Field == IDKey
+		}
+	}
+	if !id || len(columns) < 2 {
+		return Table{}, false
+	}
+	sort.Ints(columns)
+	for _, l := range lines {
+		fits, filled := true, 0
+		for _, c := range columns {
+			text := ""
+			if c < len(l.Cells) {
+				text = strings.TrimSpace(l.Cells[c])
+			}
+			if text != "" {
+				filled++
+			}
+			f, isField := building.FieldByKey(at[c].Field)
+			if at[c].Field == IDKey {
+				fits = fits && text != ""
+			} else if isField && f.Info().Type == building.Number {
+				_, st := cell.ParseNumber(text, cell.Undecided)
+				fits = fits && st != cell.Bad
+			}
+		}
+		if !fits || filled < 2 {
+			continue
+		}
+		t := Table{DataFrom: l.Row}
+		for c := range l.Cells {
+			t.Columns = append(t.Columns, Column{Index: c})
+		}
+		return t, true
+	}
+	return Table{}, false
 }
 
 // read takes line i for the header and says how well that fits.
@@ -62,8 +114,11 @@ func read(lines []Line, i int, merges []sheet.Merge, evidence []Evidence, mapped
 	l := lines[i]
 	t := Table{Row: l.Row, DataFrom: l.Row + 1}
 	var above []string
+	var written []string // the same without what merges spread
 	if i > 0 && lines[i-1].Row == l.Row-1 {
-		above = filled(lines[i-1], merges, len(l.Cells))
+		if above = filled(lines[i-1], merges, len(l.Cells)); above != nil {
+			written = lines[i-1].Cells
+		}
 	}
 	units := map[int]cell.Unit{}
 	if i+1 < len(lines) && lines[i+1].Row == l.Row+1 {
@@ -94,7 +149,13 @@ func read(lines []Line, i int, merges []sheet.Merge, evidence []Evidence, mapped
 			continue
 		}
 		if own == "" && !mergedDown(merges, c, l.Row) {
-			continue
+			// The upper of two header rows, not merged with the cell below.
+			if c >= len(written) || strings.TrimSpace(written[c]) == "" {
+				continue
+			}
+			if k := Recognise(group, ev); len(k) == 0 || k[0].Rank >= looseRank {
+				continue
+			}
 		}
 		if hasNumber(own) {
 			score -= 2
@@ -134,6 +195,8 @@ func read(lines []Line, i int, merges []sheet.Merge, evidence []Evidence, mapped
 		for _, e := range mapped {
 			if !e.Fixed && !e.Unread && own != "" && sameHeader(e.Column, own) {
 				score += 3
+			} else if n, ok := sheet.ColumnIndex(e.Column); ok && n == c && !e.Fixed && !e.Unread && isWord(own) {
+				score += 2
 			}
 		}
 		t.Columns = append(t.Columns, col)
@@ -147,6 +210,11 @@ func read(lines []Line, i int, merges []sheet.Merge, evidence []Evidence, mapped
 func hasNumber(s string) bool {
 	n, st := cell.ParseNumber(s, cell.Undecided)
 	return st == cell.OK && n.Unit.Name == "" && (n.Value < 1950 || n.Value > 2100)
+}
+
+func isWord(s string) bool {
+	_, st := cell.ParseNumber(s, cell.Undecided)
+	return st == cell.Bad
 }
 
 func sameHeader(a, b string) bool {
@@ -169,6 +237,11 @@ func filled(l Line, merges []sheet.Merge, width int) []string {
 			}
 		}
 	}
+	// Text formats know no merging: a group then stands over blank cells.
+	merged := false
+	for _, m := range merges {
+		merged = merged || m.FirstRow <= l.Row && l.Row <= m.LastRow
+	}
 	n := 0
 	for _, s := range out {
 		if strings.TrimSpace(s) != "" {
@@ -177,6 +250,11 @@ func filled(l Line, merges []sheet.Merge, width int) []string {
 	}
 	if n < 2 { // a title stands alone
 		return nil
+	}
+	for c := 1; !merged && c < len(out); c++ {
+		if strings.TrimSpace(out[c]) == "" {
+			out[c] = out[c-1]
+		}
 	}
 	return out
 }

@@ -164,6 +164,10 @@ func TestFind(t *testing.T) {
 		{"GroupsAbove", grid("|Wall||Roof|", "id|area (m2)|U-value|area (m2)|U-value", "1|200|1.2|100|0.8"),
 			[]sheet.Merge{{FirstRow: 1, LastRow: 1, FirstCol: 1, LastCol: 2}, {FirstRow: 1, LastRow: 1, FirstCol: 3, LastCol: 4}}, 2, 3,
 			"A=id, B=wall_area m2, C=wall_u, D=roof_area m2, E=roof_u"},
+		{"GroupsAboveWithoutMerging", grid("Identification||Geometry||U-values [W/(m²K)]||", "No.|Name|Heated floor area (m2)|Storeys|Wall|Roof|Windows", "1|Hall|500|2|1.2|0.4|2.8"), nil, 2, 3,
+			"A=id, B=name, C=floor_area m2, D=storeys, E=wall_u W/(m2K), F=roof_u W/(m2K), G=window_u W/(m2K)"},
+		{"UpperRowNotMergedDown", grid("Geb.-Nr.|Baujahr|Sanierung|||NGF [m²]", "||Dach|Fenster|Fassade|", "G1|1950|1990|2001|1999|500"), nil, 2, 3,
+			"A=id, B=year_built, C=year_roof, D=year_windows, E=year_wall, F=floor_area m2"},
 	} {
 		t.Run(tc.name, func(t *testing.T) {
 			tb, ok := Find(tc.lines, tc.merges, nil, nil)
@@ -178,6 +182,29 @@ func TestFind(t *testing.T) {
 				t.Errorf("row %d from %d: %s\nwant row %d from %d: %s", tb.Row, tb.DataFrom, got, tc.row, tc.dataFrom, tc.want)
 			}
 		})
+	}
+	m, err := ParseMapping(strings.NewReader("id = A\nfloor_area [m2] = B\nyear_built = C\n"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, tc := range []struct {
+		name          string
+		lines         []Line
+		row, dataFrom int
+	}{
+		{"HeadersThatSayNothing", grid("X1|X2|X3", "a|100|1950"), 1, 2},
+		{"NoHeader", grid("G1|100|1950", "G2|200|1960"), 0, 1},
+		{"NoHeaderBelowTitle", grid("Register", "", "G1|100|1950", "G2|n/a|1960"), 0, 3},
+	} {
+		tb, ok := Find(tc.lines, nil, nil, m.For("a.csv", ""))
+		if !ok || tb.Row != tc.row || tb.DataFrom != tc.dataFrom {
+			t.Errorf("%s: row %d from %d, %v", tc.name, tb.Row, tb.DataFrom, ok)
+			continue
+		}
+		p := Settle(&tb, m.For("a.csv", ""))
+		if got := describe(&tb); got != "A=id, B=floor_area m2, C=year_built" || p.Stopped() {
+			t.Errorf("%s: %s, problems %v", tc.name, got, p.Problems)
+		}
 	}
 	if _, ok := Find(grid("X1|X2|X3", "0.98|514.5|294"), nil, nil, nil); ok {
 		t.Error("headers that say nothing are taken for a table")
