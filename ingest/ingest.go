@@ -107,7 +107,9 @@ func MappingSheets(reports []*Report) []header.SheetColumns {
 	return out
 }
 
-var extensions = []string{".xlsx", ".xlsm", ".csv", ".tsv", ".txt"}
+// extensions are those of tables, and of spreadsheets that cannot be read: that
+// one lies in a folder must be said.
+var extensions = []string{".xlsx", ".xlsm", ".csv", ".tsv", ".txt", ".xls", ".xlsb", ".ods"}
 
 // Expand lists the files meant by paths: folders stand for the spreadsheets in
 // them, patterns for what they match. Files to fix, hidden files and the lock

@@ -3,6 +3,7 @@ package ingest
 import (
 	"fmt"
 	"hash/fnv"
+	"regexp"
 	"strings"
 
 	"kelvinrow/estimate/building"
@@ -11,6 +12,7 @@ import (
 	"kelvinrow/ingest/finding"
 	"kelvinrow/ingest/header"
 	"kelvinrow/ingest/sheet"
+	"kelvinrow/ingest/word"
 )
 
 // rowReader turns the rows of a sheet into records, one at a time.
@@ -27,7 +29,7 @@ type rowReader struct {
 
 	seen     []columnSeen
 	first    map[string]occurrence // by id and date
-	dated    map[string]string     // first date of an id
+	dated    map[string]sighting   // by id
 	merged   map[int]sheet.Cell    // by index of a merge that runs over rows
 	store    [building.NumFields]building.Value
 	values   check.Values
@@ -40,6 +42,13 @@ type occurrence struct {
 	hash uint64
 }
 
+// sighting is what is known of an id that came before.
+type sighting struct {
+	row  int
+	date string // of its first row
+	year int    // latest metered year of its rows without a date
+}
+
 // dateColumn is a column that dates a row.
 type dateColumn struct {
 	*header.Column
@@ -48,7 +57,7 @@ type dateColumn struct {
 
 // rows hands the rows below the header on.
 func (t *table) rows() error {
-	r := &rowReader{table: t, sized: t.hasSize(), nextYear: t.nextYear(), first: map[string]occurrence{}, dated: map[string]string{}, merged: map[int]sheet.Cell{}}
+	r := &rowReader{table: t, sized: t.hasSize(), nextYear: t.nextYear(), first: map[string]occurrence{}, dated: map[string]sighting{}, merged: map[int]sheet.Cell{}}
 	r.thisYear = max(r.nextYear-1, 0)
 	r.id = t.plan.Columns(header.IDKey)[0]
 	for _, k := range []string{header.SurveyDateKey, header.DataDateKey, header.DataYearKey} {
@@ -122,9 +131,9 @@ func (r *rowReader) row(in *sheet.Row) error {
 		return nil
 	}
 	date, surveyed := r.date(in, id)
-	keep, err := r.once(in, id, date, fault)
+	keep, date := r.once(in, id, date, fault)
 	if !keep {
-		return err
+		return nil
 	}
 	ok := r.read(in, id, surveyed)
 	r.meterYear(in)
@@ -186,6 +195,7 @@ func (r *rowReader) read(in *sheet.Row, id string, surveyed bool) bool {
 	for _, v := range r.constants {
 		r.set(v, nil)
 	}
+	r.inferAttachment(in)
 	if r.house != nil && r.values[building.Street] != nil {
 		if h := in.Cell(r.house.Index); !h.Blank() && !cell.IsAbsent(h.Text) {
 			r.values[building.Street].Text += " " + idText(h)
@@ -204,6 +214,27 @@ func (r *rowReader) read(in *sheet.Row, id string, surveyed bool) bool {
 		return !none
 	}
 	return true
+}
+
+// reMiddle tells a terraced house between two others from one that may be anywhere.
+var reMiddle = regexp.MustCompile(`\bmid|mittel|\brmh\b|tussen|mellan|mellem|midt|middle|entre`)
+
+// inferAttachment takes from "end of terrace" what it says beside the use.
+func (r *rowReader) inferAttachment(in *sheet.Row) {
+	use := r.values[building.UseField]
+	c := r.columnOf[building.UseField]
+	if use == nil || c == nil || r.plan.Has(building.AttachmentField.Key()) {
+		return
+	}
+	if i, ok := building.WordIndex(building.UseField, use.Text); !ok || !building.Use(i).IsHousing() {
+		return
+	}
+	text := in.Cell(c.Index).Text
+	w, ok := word.Find(building.AttachmentField, text)
+	if !ok || w == building.TwoSidesShared.String() && !reMiddle.MatchString(cell.Fold(text)) {
+		return
+	}
+	r.set(building.Value{Field: building.AttachmentField, Kind: use.Kind, Text: w}, c)
 }
 
 func size(f building.Field) bool {
@@ -288,34 +319,63 @@ func cellDate(c sheet.Cell, order cell.DayOrder) (string, cell.Status) {
 	return cell.ParseDate(strings.TrimSuffix(c.Text, ".0"), order)
 }
 
-// once lets an id through once, or once for each date. It reports false for a
-// row that is not to be read.
-func (r *rowReader) once(in *sheet.Row, id, date string, fault func(check, column, field, raw, text, fix string)) (bool, error) {
+// once lets an id through once, or once for each date or metered year. It
+// reports false for a row that is not to be read, and the date of one that is.
+func (r *rowReader) once(in *sheet.Row, id, date string, fault func(check, column, field, raw, text, fix string)) (bool, string) {
 	h := fnv.New64a()
 	for _, c := range in.Cells {
 		h.Write([]byte(strings.TrimSpace(c.Text)))
 		h.Write([]byte{0})
 	}
-	key := id + "\x00" + date
+	year := 0
+	if date == "" {
+		year = r.yearOfMeter(in)
+	}
+	duplicate := func(row int) (bool, string) {
+		fault("duplicate-id", r.id.Letters(), header.IDKey, id, fmt.Sprintf("building %s is in row %d already, with other values", id, row), "leave one of the rows, or date them")
+		r.out.SetAside++
+		return false, ""
+	}
+	key := fmt.Sprint(id, "\x00", date, "\x00", year)
 	if o, ok := r.first[key]; ok {
 		if o.hash == h.Sum64() {
 			r.found.add(finding.Finding{Severity: finding.Note, Check: "duplicate-row", Row: in.Number, Column: r.id.Letters(), Field: header.IDKey, Building: id, Raw: id,
 				Text: fmt.Sprintf("the row says the same as row %d and counts once", o.row)})
 			r.out.Used++
-			return false, nil
+			return false, ""
 		}
-		fault("duplicate-id", r.id.Letters(), header.IDKey, id, fmt.Sprintf("building %s is in row %d already, with other values", id, o.row), "leave one of the rows, or date them")
-		r.out.SetAside++
-		return false, nil
+		return duplicate(o.row)
+	}
+	before, again := r.dated[id]
+	if again && date == "" && before.date == "" && (year == 0 || before.year == 0) {
+		return duplicate(before.row)
 	}
 	r.first[key] = occurrence{in.Number, h.Sum64()}
-	if d, ok := r.dated[id]; ok && d != date {
-		r.found.group("versions", finding.Finding{Severity: finding.Note, Check: "versions", Row: in.Number, Column: r.id.Letters(), Field: header.IDKey, Building: id,
-			Text: "the building comes again with another date; all are kept, the newest counts"})
-	} else if !ok {
-		r.dated[id] = date
+	if !again {
+		r.dated[id] = sighting{in.Number, date, year}
+		return true, date
 	}
-	return true, nil
+	r.found.group("versions", finding.Finding{Severity: finding.Note, Check: "versions", Row: in.Number, Column: r.id.Letters(), Field: header.IDKey, Building: id,
+		Text: "the building comes again with another date or metered year; all are kept, the newest counts"})
+	switch {
+	case year == 0:
+	case year > before.year:
+		before.year = year // of rows of one date, the last counts
+		r.dated[id] = before
+	default:
+		date = fmt.Sprintf("%d-12-31", year) // so that it yields to the later reading above
+	}
+	return true, date
+}
+
+// yearOfMeter is the year of the row's meter reading, 0 if it names none.
+func (r *rowReader) yearOfMeter(in *sheet.Row) int {
+	for _, c := range r.plan.Columns(building.MeteredYear.Key()) {
+		if span, st := cell.ParseYear(in.Cell(c.Index).Text, r.thisYear); st == cell.OK {
+			return int(span.High)
+		}
+	}
+	return 0
 }
 
 // idText is an id as text: trimmed, inner blanks single, no ".0" of a number.
@@ -336,7 +396,7 @@ var totals = strings.Fields("total totals totale totaal totalt totalsumme sum su
 // remarks below the table.
 func (r *rowReader) noBuilding(in *sheet.Row, id string) bool {
 	filled, first := 0, ""
-	same := 0
+	same, texts := 0, 0
 	for i, c := range in.Cells {
 		if c.Blank() {
 			continue
@@ -344,6 +404,8 @@ func (r *rowReader) noBuilding(in *sheet.Row, id string) bool {
 		filled++
 		if first == "" {
 			first = c.Text
+		} else if _, st := cell.ParseNumber(c.Text, cell.Undecided); st == cell.Bad {
+			texts++
 		}
 		for j := range r.layout.Columns {
 			if k := &r.layout.Columns[j]; k.Index == i && k.Header == strings.TrimSpace(c.Text) {
@@ -360,7 +422,8 @@ func (r *rowReader) noBuilding(in *sheet.Row, id string) bool {
 		word = "total"
 	}
 	for _, w := range totals {
-		if word == w && (id == "" || cell.Fold(id) == f) {
+		// "Total House" with a name beside it is a building.
+		if word == w && (id == "" || cell.Fold(id) == f) && (f == w || texts == 0) {
 			r.found.add(finding.Finding{Severity: finding.Note, Check: "total-row", Row: in.Number, Raw: first, Text: fmt.Sprintf("the row %q is a total and no building", first)})
 			return true
 		}

@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"fmt"
+	"slices"
 	"strconv"
 	"strings"
 
@@ -159,6 +160,9 @@ func look(e *header.Evidence, c sheet.Cell, closely bool) {
 			if c.Number >= 1000 && c.Number <= 2100 && c.Number == float64(int(c.Number)) {
 				e.Years++
 			}
+			if isSerial(c.Number) {
+				e.Serials++
+			}
 		}
 		return
 	case sheet.Date:
@@ -190,6 +194,9 @@ func look(e *header.Evidence, c sheet.Cell, closely bool) {
 		e.Numbers++
 		if v.Value >= 1000 && v.Value <= 2100 && v.Value == float64(int(v.Value)) && v.Unit.Name == "" {
 			e.Years++
+		}
+		if isSerial(v.Value) && v.Unit.Name == "" {
+			e.Serials++
 		}
 	} else if len(c.Text) < 40 {
 		if s, st := cell.ParseYear(c.Text, 2100); st == cell.OK && s.Low >= 1000 && s.High <= 2101 {
@@ -230,6 +237,9 @@ func (t *table) sheet() *building.Sheet {
 		if f, ok := building.FieldByKey(e.Field); ok {
 			s.Columns[f] = "constant"
 		}
+	}
+	if use := t.plan.Columns(building.UseField.Key()); len(use) > 0 && !t.plan.Has(building.AttachmentField.Key()) {
+		s.Columns[building.AttachmentField] = use[0].Letters()
 	}
 	if t.carrierFromMeter() {
 		s.Columns[building.CarrierField] = s.Columns[building.MeteredHeat]
@@ -286,17 +296,46 @@ func (t *table) remarks() {
 		}
 	}
 	if !t.hasSize() {
+		t.noSize()
 		return
 	}
 	if !t.plan.Has(building.UseField.Key()) {
-		remark(finding.Note, "no-use", building.UseField, nil, "no column says what the buildings are used for", "add one, or give use = constant:\"school\" in a column file")
+		remark(finding.Warning, "no-use", building.UseField, nil, "no column says what the buildings are used for", "add one, or give use = constant:\"school\" in a column file")
 	}
-	if !t.plan.Has(building.YearBuilt.Key()) {
-		remark(finding.Note, "no-year", building.YearBuilt, nil, "no column says when the buildings were built", "add one if it is known")
+	if dated := slices.ContainsFunc(ages, func(f building.Field) bool { return t.plan.Has(f.Key()) }); !dated {
+		remark(finding.Warning, "no-year", building.YearBuilt, nil, "no column says when the buildings were built or renewed", "add one if it is known")
 	}
 	if !t.plan.Has(building.VentilationField.Key()) {
 		remark(finding.Warning, "no-ventilation", building.VentilationField, nil, "no column says how the buildings are ventilated; all count as unknown", "add a column, even where it says \"unknown\" for some")
 	}
+}
+
+// ages are the fields of which one at least says how old a building is.
+var ages = []building.Field{building.YearBuilt, building.YearWall, building.YearRoof, building.YearFloor, building.YearWindows}
+
+// noSize says that rows without a size only add to what other sheets bring,
+// and which columns could be one after all.
+func (t *table) noSize() {
+	f := finding.Finding{Severity: finding.Note, Check: "no-size", Field: building.FloorArea.Key(),
+		Text: "no column is recognised as floor area or volume, so the rows only add to buildings whose size another sheet gives"}
+	var names []string
+	for i := range t.layout.Columns {
+		c := &t.layout.Columns[i]
+		if c.Key != "" || c.Index >= len(t.evidence) || c.Ignored() || cell.ForeignUnit(c.Header) {
+			continue
+		}
+		if e := t.evidence[c.Index]; e.Filled > 1 && e.Numbers*10 >= (e.Filled-1)*8 {
+			names = append(names, fmt.Sprintf("%s %q", c.Letters(), c.Header))
+			f.Column += "," + c.Letters()
+		}
+	}
+	if len(names) > 0 {
+		f.Severity = finding.Warning
+		f.Column = f.Column[1:]
+		f.Text += "; it could be one of " + strings.Join(names, ", ")
+		f.Fix = fmt.Sprintf("say which in a column file: floor_area = %s", strings.Split(f.Column, ",")[0])
+	}
+	t.found.add(f)
 }
 
 // describe fills the report's columns.

@@ -2,6 +2,7 @@ package ingest
 
 import (
 	"fmt"
+	"math"
 	"strconv"
 	"strings"
 
@@ -22,6 +23,7 @@ type fieldReader struct {
 	decimal []cell.Decimal // by column
 	decided []bool         // by its own cells, so that nothing need be said
 	small   bool           // "1.234" is more likely a decimal than thousands
+	serial  bool           // its years are day serials without their format
 }
 
 // problem is what a cell's text has against it.
@@ -49,6 +51,7 @@ func (t *table) fieldReader(f building.Field, columns []*header.Column) fieldRea
 		var e cell.Evidence
 		if c.Index < len(t.evidence) {
 			e = t.evidence[c.Index].Decimal
+			fr.serial = fr.serial || t.evidence[c.Index].Serials > t.evidence[c.Index].Years
 		}
 		d := e.Decimal()
 		fr.decided = append(fr.decided, d != cell.Undecided && (e.Point == 0 || e.Comma == 0))
@@ -99,6 +102,9 @@ func (fr *fieldReader) number(c *header.Column, in sheet.Cell, unit string) (bui
 	switch in.Kind {
 	case sheet.Number:
 		n.Value = in.Number
+		if in.Percent && fr.info.Unit == "share" {
+			n.Unit, _ = cell.UnitNamed("share") // 0.85 that is shown as 85 %
+		}
 	case sheet.Text:
 		var st cell.Status
 		n, st, say = fr.text(c, in.Text)
@@ -118,6 +124,10 @@ func (fr *fieldReader) number(c *header.Column, in sheet.Cell, unit string) (bui
 	case n.Unit.Name != "" && u.Name == "":
 		return building.Value{}, cell.Bad, problem{Severity: finding.Warning, Check: "wrong-unit",
 			Text: fmt.Sprintf("%q has a unit that %s cannot have", clip(in.Text), fr.info.Label), Fix: "give it in " + fr.info.Unit}
+	case u.Name == "%" && n.Unit.Name == "" && v > 0 && v <= 1.2:
+		// No one has a heat recovery of 0.85 %.
+		say = problem{Severity: finding.Note, Check: "share-for-percent", Group: "share-for-percent",
+			Text: fmt.Sprintf("%s %s in a column of percent is taken as a share of one", fr.info.Label, clip(in.Text)), Fix: "write it as percent, as the header says"}
 	case u.Name != "":
 		v *= u.Factor
 	case fr.info.Unit == "share" && (fr.field == building.HeatRecovery && v > 1.5 || v > 8):
@@ -181,7 +191,21 @@ func (fr *fieldReader) text(c *header.Column, s string) (cell.Number, cell.Statu
 func (fr *fieldReader) year(thisYear int, in sheet.Cell) (building.Value, cell.Status, problem) {
 	if in.Kind == sheet.Date {
 		y, _ := strconv.ParseFloat(in.Text[:4], 64)
-		return building.Value{Number: y, Low: y, High: y}, cell.OK, problem{}
+		say := problem{}
+		// 1965 typed into a cell for dates is kept as the 1965th day, in May 1905.
+		if n := in.Number; n >= 1400 && n <= float64(max(thisYear, 2000))+1 && n == math.Trunc(n) && !strings.HasSuffix(in.Text, "-01-01") {
+			y = n
+			say = problem{Severity: finding.Note, Check: "year-as-date", Group: "year-as-date",
+				Text: fmt.Sprintf("the date %s is taken for the year %.0f, typed into a cell formatted for dates", in.Text, n), Fix: "format the column as numbers"}
+		}
+		return building.Value{Number: y, Low: y, High: y}, cell.OK, say
+	}
+	if n, err := strconv.ParseFloat(strings.TrimSpace(in.Text), 64); err == nil && fr.serial && isSerial(n) {
+		if d, ok := sheet.SerialDate(n, false); ok {
+			y, _ := strconv.ParseFloat(d[:4], 64)
+			return building.Value{Number: y, Low: y, High: y}, cell.OK, problem{Severity: finding.Note, Check: "serial-year", Group: "serial-year",
+				Text: fmt.Sprintf("%s is taken for the date %s without its format", in.Text, d), Fix: "format the column as dates, or write years"}
+		}
 	}
 	span, st := cell.ParseYear(in.Text, thisYear)
 	if st == cell.Absent && strings.Trim(in.Text, "0. ") == "" {
@@ -194,6 +218,10 @@ func (fr *fieldReader) year(thisYear int, in sheet.Cell) (building.Value, cell.S
 	}
 	return building.Value{Number: (span.Low + span.High) / 2, Low: span.Low, High: span.High}, st, problem{}
 }
+
+// isSerial reports whether n can be a day from 1927 to 2064; lower numbers are
+// too near to years.
+func isSerial(n float64) bool { return n >= 10000 && n <= 60000 && n == math.Trunc(n) }
 
 func (fr *fieldReader) word(c *header.Column, in sheet.Cell) (building.Value, cell.Status, problem) {
 	text := in.Text

@@ -148,6 +148,21 @@ func num(v float64) string {
 	return strconv.FormatFloat(v, 'g', 4, 64)
 }
 
+// shown writes a value as people do, a share in percent.
+func shown(v float64, unit string) string {
+	if unit == "share" {
+		return num(v*100) + " %"
+	}
+	return num(v) + spaced(unit)
+}
+
+func (b Bound) span() string {
+	if b.Field.Info().Unit == "share" {
+		return num(b.Low*100) + " to " + num(b.High*100) + " %"
+	}
+	return num(b.Low) + " to " + num(b.High)
+}
+
 func ratio(low, high float64, a, b, unit, outside string) func([]float64) string {
 	return func(v []float64) string {
 		r := v[0] / v[1]
@@ -197,7 +212,7 @@ func Row(v *Values, nextYear int) []Problem {
 		}
 		info := b.Field.Info()
 		report(Problem{b.Check, b.Severity, b.Field, fields(b.Field),
-			fmt.Sprintf("%s %s%s is outside %s to %s", lower(info.Label), num(n), spaced(info.Unit), num(b.Low), num(b.High)),
+			fmt.Sprintf("%s %s is outside %s", lower(info.Label), shown(n, info.Unit), b.span()),
 			"check the value and its unit"})
 	}
 	built := v[building.YearBuilt]

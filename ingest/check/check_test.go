@@ -92,4 +92,8 @@ func TestTextsNameTheValues(t *testing.T) {
 	if want := "wall U-value 12 W/(m2K) is outside 0.05 to 7"; len(p) != 1 || p[0].Text != want {
 		t.Errorf("%+v, want %q", p, want)
 	}
+	p = Row(values(map[building.Field]float64{building.Efficiency: 0.02}), 2027)
+	if want := "generator efficiency 2 % is outside 20 to 700 %"; len(p) != 1 || p[0].Text != want {
+		t.Errorf("%+v, want %q", p, want)
+	}
 }

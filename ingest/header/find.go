@@ -33,6 +33,11 @@ type Column struct {
 // Letters names the column.
 func (c *Column) Letters() string { return sheet.ColumnLetters(c.Index) }
 
+// Ignored reports whether the column is known for something that is not read.
+func (c *Column) Ignored() bool {
+	return c.Key == "" && len(c.candidates) > 0 && c.candidates[0].Key == ignoredKey
+}
+
 // Table is the layout of one sheet.
 type Table struct {
 	Row      int // of the header, the lower one of two; 0 without one

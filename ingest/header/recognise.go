@@ -25,6 +25,7 @@ type Evidence struct {
 	Filled  int
 	Numbers int // plain or written numbers
 	Years   int // whole numbers from 1000 to 2100, or spans of years
+	Serials int // whole numbers that could be dates without their format
 	Decimal cell.Evidence
 	// Dates that can only be read with the month or the day first.
 	MonthFirst, DayFirst int
@@ -386,7 +387,7 @@ func (h *parsed) candidate(e entry, rank int, ev Evidence) (Candidate, bool) {
 			return c, false
 		}
 		c.Unit = cell.Unit{}
-		if ev.Filled > 3 && (ev.Years+ev.Dates)*10 < ev.Filled-1 && ev.Numbers*2 > ev.Filled {
+		if ev.Filled > 3 && (ev.Years+ev.Dates)*10 < ev.Filled-1 && ev.Numbers*2 > ev.Filled && ev.Serials*10 < ev.Filled*8 {
 			// Zeros and serial numbers may outnumber the years of renewal.
 			if f == building.YearBuilt {
 				return c, false

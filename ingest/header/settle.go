@@ -78,7 +78,7 @@ func Settle(t *Table, mapped []Entry) *Plan {
 	}
 	for i := range t.Columns {
 		c := &t.Columns[i]
-		if c.Key == "" && len(c.candidates) > 0 && c.candidates[0].Key == ignoredKey {
+		if c.Ignored() {
 			c.How = "known, and not needed"
 		} else if c.Key == "" && c.How == "" && cell.ForeignUnit(c.Header) {
 			c.How = "its unit is none that a field has"

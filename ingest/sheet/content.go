@@ -100,6 +100,21 @@ func (c *Content) ole() bool {
 	return bytes.HasPrefix(c.head, []byte{0xD0, 0xCF, 0x11, 0xE0, 0xA1, 0xB1, 0x1A, 0xE1})
 }
 
+// other names what a file is that begins as no table does; programs like to
+// save web pages and XML under the name of a spreadsheet.
+func (c *Content) other() string {
+	head := bytes.ToLower(bytes.TrimLeft(bytes.TrimPrefix(c.head, []byte("\xef\xbb\xbf")), " \t\r\n"))
+	for _, k := range [][2]string{
+		{"<!doctype", "a web page"}, {"<html", "a web page"}, {"<table", "a web page"}, {"<?xml", "XML"}, {"<workbook", "XML"},
+		{"%pdf", "a PDF document"}, {`{\rtf`, "a text document"}, {`{"`, "JSON"}, {"[{", "JSON"}, {"mime-version:", "a web page"},
+	} {
+		if bytes.HasPrefix(head, []byte(k[0])) {
+			return k[1]
+		}
+	}
+	return ""
+}
+
 // utf16 finds the byte order of UTF-16 text by its mark or by its zero bytes.
 func (c *Content) utf16() (binary.ByteOrder, bool) {
 	switch {

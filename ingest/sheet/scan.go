@@ -37,7 +37,7 @@ type failure struct{ err error }
 func (f failure) Error() string { return f.err.Error() }
 
 func (s *scanner) scan(ctx context.Context, part string, visit func(*Row) error) (int, error) {
-	d, c, err := s.x.decoder(part)
+	d, c, err := s.x.decoder(part, maxPartBytes)
 	if err == nil {
 		defer c.Close()
 		err = s.tokens(ctx, d, visit)
@@ -93,6 +93,9 @@ func (s *scanner) tokens(ctx context.Context, d *xml.Decoder, visit func(*Row) e
 			}
 		case xml.CharData:
 			if s.inValue && s.skip == 0 {
+				if len(s.value)+len(t) > maxCellBytes {
+					return &BadFile{"too-wide", fmt.Sprintf("cell %s%d of sheet %q holds more than %d characters", ColumnLetters(s.column), s.row.Number, s.name, maxCellBytes), "check the cell and save again"}
+				}
 				s.value = append(s.value, t...)
 			}
 		}
@@ -144,6 +147,9 @@ func (s *scanner) start(e xml.StartElement) error {
 			a, b, _ := strings.Cut(attr(e, "ref"), ":")
 			c1, r1, ok1 := splitReference(a)
 			c2, r2, ok2 := splitReference(b)
+			if len(s.merges) >= maxMerges {
+				return &BadFile{"too-big", fmt.Sprintf("sheet %q has more than %d merged ranges", s.name, int(maxMerges)), "take the merging off and save again"}
+			}
 			if ok1 && ok2 {
 				s.merges = append(s.merges, Merge{min(r1, r2), max(r1, r2), min(c1, c2), max(c1, c2)})
 			}
@@ -224,12 +230,16 @@ func (s *scanner) cell() (Cell, error) {
 	if err != nil || math.IsInf(v, 0) || math.IsNaN(v) {
 		return Cell{Kind: Text, Text: raw}, nil
 	}
-	if s.style >= 0 && s.style < len(s.x.date) && s.x.date[s.style] {
+	as := plain
+	if s.style >= 0 && s.style < len(s.x.formats) {
+		as = s.x.formats[s.style]
+	}
+	if as == asDate {
 		if day, ok := SerialDate(v, s.x.from1904); ok {
 			return Cell{Kind: Date, Text: day, Number: v}, nil
 		}
 	}
-	return Cell{Kind: Number, Text: formatNumber(v), Number: v}, nil
+	return Cell{Kind: Number, Text: formatNumber(v), Number: v, Percent: as == asPercent}, nil
 }
 
 // splitReference reads a cell reference such as "AB12": column 0-based, row 1-based.

@@ -28,9 +28,10 @@ const (
 
 // Cell is one cell as stored; formulas count by their cached value.
 type Cell struct {
-	Kind   Kind
-	Text   string
-	Number float64
+	Kind    Kind
+	Text    string
+	Number  float64
+	Percent bool // a Number that is shown times a hundred, with a per cent sign
 }
 
 // Blank reports whether the cell shows nothing.
@@ -85,11 +86,19 @@ type Book interface {
 	Close() error
 }
 
-// Limits that no honest sheet of buildings comes near.
+// Limits that no honest sheet of buildings comes near. Parts that are held in
+// memory have lower ones than those that are streamed.
 const (
-	maxPartBytes = 1 << 30
-	maxColumns   = 4096
-	maxRows      = 1 << 20 // rows of an .xlsx sheet, by its format
+	maxPartBytes  = 1 << 30
+	maxBookBytes  = 4 << 30   // all sheets together
+	maxTextBytes  = 512 << 20 // the texts that cells share
+	maxTexts      = 20e6
+	maxOtherBytes = 64 << 20 // styles, lists of parts
+	maxCellBytes  = 1 << 20
+	maxMerges     = 200e3
+	maxSheets     = 1000
+	maxColumns    = 4096
+	maxRows       = 1 << 20 // rows of an .xlsx sheet, by its format
 )
 
 // BadFile says why a file is no spreadsheet that can be read, and what to do.
@@ -109,6 +118,9 @@ func Open(path string, c *Content) (Book, error) {
 	}
 	if ext := strings.ToLower(filepath.Ext(path)); ext == ".xlsx" || ext == ".xlsm" {
 		return nil, &BadFile{"no-workbook", "the file is no .xlsx workbook although its name says so", "open it in a spreadsheet program and save it as .xlsx"}
+	}
+	if what := c.other(); what != "" {
+		return nil, &BadFile{"no-table", "the file is " + what + " and no table", "open it in a spreadsheet program and save the table as .xlsx or .csv"}
 	}
 	if c.binary() {
 		return nil, &BadFile{"no-text", "the file is neither a workbook nor text", "save the table as .xlsx or .csv"}

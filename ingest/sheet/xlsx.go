@@ -22,11 +22,20 @@ type xlsx struct {
 	sheets   []Info
 	targets  []string // part of each sheet
 	strings  []string
-	date     []bool // by cell style: does its number format show a date?
+	formats  []format // by cell style
 	from1904 bool
 	modified string
 	rows     []int // rows that Verify counted, by sheet; -1 before
 }
+
+// format is what a number format makes of a number.
+type format uint8
+
+const (
+	plain format = iota
+	asDate
+	asPercent
+)
 
 func notAWorkbook(why string) error {
 	return &BadFile{"no-workbook", "the file is no .xlsx workbook: " + why, "open it in a spreadsheet program and save it as .xlsx"}
@@ -62,8 +71,16 @@ func partKey(name string) string {
 type relation struct{ id, kind, target string }
 
 func (x *xlsx) open() error {
-	if x.parts["mimetype"] != nil && x.parts["content.xml"] != nil {
-		return notAWorkbook("it is an OpenDocument file")
+	for _, k := range [][2]string{
+		{"content.xml", "it is an OpenDocument file"}, {"word/document.xml", "it is a text document"},
+		{"ppt/presentation.xml", "it is a presentation"}, {"xl/workbook.bin", "it is a binary workbook, .xlsb"},
+	} {
+		if x.parts[k[0]] != nil {
+			return notAWorkbook(k[1])
+		}
+	}
+	if x.parts["[content_types].xml"] == nil && x.parts["_rels/.rels"] == nil && x.parts["xl/workbook.xml"] == nil {
+		return &BadFile{"no-workbook", "the file is an archive of other files and no workbook", "unpack it and give the files in it"}
 	}
 	book := "xl/workbook.xml"
 	if rels, err := x.relations(""); err == nil {
@@ -126,6 +143,16 @@ func (x *xlsx) readBook(book string, byID map[string]relation) error {
 	if len(x.sheets) == 0 {
 		return notAWorkbook("it lists no sheets")
 	}
+	var all uint64
+	for _, t := range x.targets {
+		if f := x.parts[partKey(t)]; f != nil {
+			all += f.UncompressedSize64
+		}
+	}
+	if all > maxBookBytes || len(x.sheets) > maxSheets {
+		return &BadFile{"too-big", fmt.Sprintf("the workbook has %d sheets of %d MB in all, more than %d sheets or %d MB", len(x.sheets), all>>20, maxSheets, maxBookBytes>>20),
+			"split the workbook, or save the tables as .csv"}
+	}
 	return nil
 }
 
@@ -149,19 +176,19 @@ func attr(e xml.StartElement, local string) string {
 }
 
 // decoder opens a part; what it unpacks to is bounded whatever the directory says.
-func (x *xlsx) decoder(name string) (*xml.Decoder, io.Closer, error) {
+func (x *xlsx) decoder(name string, limit int64) (*xml.Decoder, io.Closer, error) {
 	f := x.parts[partKey(name)]
 	if f == nil {
 		return nil, nil, fmt.Errorf("part %q is missing", name)
 	}
-	if f.UncompressedSize64 > maxPartBytes {
-		return nil, nil, tooBig(name)
+	if f.UncompressedSize64 > uint64(limit) {
+		return nil, nil, tooBig(name, limit)
 	}
 	r, err := f.Open()
 	if err != nil {
 		return nil, nil, err
 	}
-	d := xml.NewDecoder(&bounded{r: r, left: maxPartBytes, name: name})
+	d := xml.NewDecoder(&bounded{r: r, left: limit, limit: limit, name: name})
 	d.CharsetReader = func(charset string, in io.Reader) (io.Reader, error) {
 		enc, err := htmlindex.Get(charset)
 		if err != nil {
@@ -172,19 +199,19 @@ func (x *xlsx) decoder(name string) (*xml.Decoder, io.Closer, error) {
 	return d, r, nil
 }
 
-func tooBig(name string) error {
-	return &BadFile{"too-big", fmt.Sprintf("part %q unpacks to more than %d MB", name, maxPartBytes>>20), "split the workbook, or save the table as .csv"}
+func tooBig(name string, limit int64) error {
+	return &BadFile{"too-big", fmt.Sprintf("part %q unpacks to more than %d MB", name, limit>>20), "split the workbook, or save the table as .csv"}
 }
 
 type bounded struct {
-	r    io.Reader
-	left int64
-	name string
+	r           io.Reader
+	left, limit int64
+	name        string
 }
 
 func (b *bounded) Read(p []byte) (int, error) {
 	if b.left <= 0 {
-		return 0, tooBig(b.name)
+		return 0, tooBig(b.name, b.limit)
 	}
 	n, err := b.r.Read(p[:min(int64(len(p)), b.left)])
 	b.left -= int64(n)
@@ -193,7 +220,7 @@ func (b *bounded) Read(p []byte) (int, error) {
 
 // each calls visit for every start element of a part, which must be well formed.
 func (x *xlsx) each(name string, visit func(*xml.Decoder, xml.StartElement) error) error {
-	d, c, err := x.decoder(name)
+	d, c, err := x.decoder(name, maxOtherBytes)
 	if err != nil {
 		return err
 	}
@@ -248,9 +275,12 @@ func (x *xlsx) readModified(part string) {
 }
 
 func (x *xlsx) readStrings(part string) error {
-	d, c, err := x.decoder(part)
-	if err != nil {
+	if x.parts[partKey(part)] == nil {
 		return nil // cells that refer to a missing part fail by themselves
+	}
+	d, c, err := x.decoder(part, maxTextBytes)
+	if err != nil {
+		return err
 	}
 	defer c.Close()
 	var b strings.Builder
@@ -276,6 +306,9 @@ func (x *xlsx) readStrings(part string) error {
 		case xml.EndElement:
 			switch t.Name.Local {
 			case "si":
+				if len(x.strings) >= maxTexts {
+					return tooBig(part, maxTextBytes)
+				}
 				x.strings = append(x.strings, unescape(b.String()))
 			case "t":
 				inText = false
@@ -329,7 +362,14 @@ func (x *xlsx) readStyles(part string) error {
 			if cells == 1 {
 				id, _ := strconv.Atoi(attr(e, "numFmtId"))
 				code, ok := custom[id]
-				x.date = append(x.date, ok && dateFormat(code) || !ok && builtInDate(id))
+				f := plain
+				switch {
+				case ok && dateFormat(code) || !ok && builtInDate(id):
+					f = asDate
+				case ok && percentFormat(code) || !ok && (id == 9 || id == 10):
+					f = asPercent
+				}
+				x.formats = append(x.formats, f)
 			}
 		}
 		return nil
@@ -362,6 +402,23 @@ func dateFormat(code string) bool {
 			return true
 		case c == 'G' || c == 'g': // General
 			return false
+		}
+	}
+	return false
+}
+
+// percentFormat reports whether a number format shows a number times a hundred.
+func percentFormat(code string) bool {
+	quoted := false
+	for i := 0; i < len(code); i++ {
+		switch c := code[i]; {
+		case c == '"':
+			quoted = !quoted
+		case quoted:
+		case c == '\\' || c == '_' || c == '*':
+			i++
+		case c == '%':
+			return true
 		}
 	}
 	return false
