@@ -25,9 +25,35 @@ var (
 	reDecade  = regexp.MustCompile(`^(?:les )?(?:annees |anos |jaren |die |the )?(\d{3}0|\d0)(?: ?s| ?er| ?erne| ?ern| ?er jahre| ?tal| ?talet| ?tallet| ?ties)?$`)
 	reCentury = regexp.MustCompile(`^(?:the |siecle |siglo |s )?(1[0-9]|2[01]|xi|xii|xiii|xiv|xv|xvi|xvii|xviii|xix|xx|xxi) ?(?:st|nd|rd|th|e|eme|de)? ?(?:c|cent|century|jh|jhd|jhdt|jahrhundert|siecle|s|eeuw|arhundrede|arhundre|arhundradet|siglo)?$`)
 	reTwo     = regexp.MustCompile(`^\d{4} ?/ ?\d{4}$`) // "built / changed"
+	reRemark  = regexp.MustCompile(`^(\S.*?)\s*\(([^)]*)\)$`)
 	reYear    = regexp.MustCompile(`^\d{4}$`)
-	reInDate  = regexp.MustCompile(`^(?:\d{1,2}[./-]\d{1,2}[./-](\d{4})|\d{1,2}[./-](\d{4})|(\d{4})[./-]\d{1,2}(?:[./-]\d{1,2})?(?:[T ].*)?)$`)
+	reInDate  = regexp.MustCompile(`^(?:\d{1,2}[./-]\d{1,2}[./-](\d{4})|\d{1,2}[./-](\d{4})|(\d{4})[./-]\d{1,2}(?:[./-]\d{1,2})?(?:[T ]\d.*)?)$`)
 )
+
+// eras are spans that people name without a year. Their ends are conventions of
+// building history; what matters here is the middle.
+var eras = func() map[string]Span {
+	m := map[string]Span{}
+	for _, e := range []struct {
+		low, high float64
+		names     string
+	}{
+		{1714, 1836, "georgian"},
+		{1837, 1901, "victorian"},
+		{1902, 1913, "edwardian"},
+		{1871, 1913, "gründerzeit|gründerzeitlich"},
+		{1895, 1913, "jugendstil|art nouveau|modernisme|modernismo"},
+		{1895, 1905, "jahrhundertwende|turn of the century|um die jahrhundertwende|rond de eeuwwisseling|sekelskiftet|århundreskiftet|århundredskiftet"},
+		{1869, 1938, "pre war|prewar|vorkrieg|vorkriegszeit|avant guerre|vooroorlogs|förkrigstid|førkrigstid|preguerra"},
+		{1919, 1938, "interwar|inter war|between the wars|zwischenkriegszeit|entre deux guerres|interbellum|mellankrigstid|mellankrigstiden|mellemkrigstid|mellemkrigstiden|mellomkrigstid|mellomkrigstiden|entreguerras|periodo de entreguerras"},
+		{1946, 1964, "post war|postwar|nachkrieg|nachkriegszeit|nachkriegsbau|après guerre|naoorlogs|wederopbouw|efterkrigstid|efterkrigstiden|etterkrigstid|etterkrigstiden|posguerra|postguerra"},
+	} {
+		for _, n := range strings.Split(e.names, "|") {
+			m[Fold(n)] = Span{e.low, e.high}
+		}
+	}
+	return m
+}()
 
 func words(s string) []string {
 	ws := strings.Split(s, "|")
@@ -63,8 +89,9 @@ func ParseYear(s string, thisYear int) (Span, Status) {
 			return Span{}, Absent
 		case n == float64(int(n)) && n >= 0 && n < 1e6:
 			return Span{n, n}, OK
+		case n > -1000 || n != float64(int(n)): // "-1918" is a span without its beginning
+			return Span{}, Bad
 		}
-		return Span{}, Bad
 	}
 	if m := reInDate.FindStringSubmatch(low); m != nil {
 		y, _ := strconv.ParseFloat(m[1]+m[2]+m[3], 64)
@@ -80,18 +107,30 @@ func ParseYear(s string, thisYear int) (Span, Status) {
 		return Span{}, Bad
 	}
 	switch {
-	case strings.HasPrefix(low, "<"), strings.HasPrefix(low, "≤"), strings.HasPrefix(low, "-1"), strings.HasPrefix(low, "–1"):
-		low = "before " + strings.TrimLeft(low, "<≤=-– ")
-	case strings.HasPrefix(low, ">"), strings.HasPrefix(low, "≥"):
-		low = "after " + strings.TrimLeft(low, ">≥= ")
+	case strings.HasPrefix(low, "≤"), strings.HasPrefix(low, "<="), strings.HasPrefix(low, "-1"), strings.HasPrefix(low, "–1"):
+		low = "until " + strings.TrimLeft(low, "<≤=-– ")
+	case strings.HasPrefix(low, "<"):
+		low = "before " + strings.TrimLeft(low, "< ")
+	case strings.HasPrefix(low, "≥"), strings.HasPrefix(low, ">="):
+		low = "since " + strings.TrimLeft(low, ">≥= ")
+	case strings.HasPrefix(low, ">"):
+		low = "after " + strings.TrimLeft(low, "> ")
 	case strings.HasSuffix(low, "-") || strings.HasSuffix(low, "–") || strings.HasSuffix(low, "+"):
-		low = "after " + strings.TrimRight(low, "-–+ ")
+		low = "since " + strings.TrimRight(low, "-–+ ")
 	case strings.HasPrefix(low, "~"):
 		low = "about " + strings.TrimLeft(low, "~ ")
-	case strings.HasSuffix(low, "?"):
-		low = "about " + strings.TrimRight(low, "? ")
+	case strings.HasSuffix(low, "?"), strings.HasSuffix(low, "(?)"):
+		low = "about " + strings.TrimRight(low, "?() ")
 	}
-	return parseFolded(Fold(low), thisYear)
+	sp, st := parseFolded(Fold(low), thisYear)
+	if m := reRemark.FindStringSubmatch(low); st == Bad && m != nil {
+		// "1965 (extension 1990)" was built in 1965; "1965 (est.)" about then.
+		if aboutWords[Fold(m[2])] || strings.Trim(m[2], "? ") == "" {
+			return parseFolded(Fold("about "+m[1]), thisYear)
+		}
+		return parseFolded(Fold(m[1]), thisYear)
+	}
+	return sp, st
 }
 
 func spanOf(low string) (Span, bool) {
@@ -121,6 +160,12 @@ func spanOf(low string) (Span, bool) {
 }
 
 func parseFolded(f string, thisYear int) (Span, Status) {
+	if e, ok := eras[f]; ok {
+		return e, OK
+	}
+	if year, word, ok := strings.Cut(f, " "); ok && aboutWords[word] && reYear.MatchString(year) {
+		f = word + " " + year // "1965 ca."
+	}
 	if rest, ok := cutWord(f, before); ok {
 		sp, st := parseFolded(rest, thisYear)
 		if st != OK {
