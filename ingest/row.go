@@ -2,7 +2,6 @@ package ingest
 
 import (
 	"fmt"
-	"hash/fnv"
 	"regexp"
 	"strings"
 
@@ -30,23 +29,13 @@ type rowReader struct {
 	seen     []columnSeen
 	first    map[string]occurrence // by id and date
 	dated    map[string]sighting   // by id
-	merged   map[int]sheet.Cell    // by index of a merge that runs over rows
+	upright  []sheet.Merge         // merges that run over rows, by first row
+	begun    int                   // how many of them have begun
+	open     []span                // those that the last row was in
 	store    [building.NumFields]building.Value
 	values   check.Values
 	columnOf [building.NumFields]*header.Column
 	record   building.Record
-}
-
-type occurrence struct {
-	row  int
-	hash uint64
-}
-
-// sighting is what is known of an id that came before.
-type sighting struct {
-	row  int
-	date string // of its first row
-	year int    // latest metered year of its rows without a date
 }
 
 // dateColumn is a column that dates a row.
@@ -57,7 +46,7 @@ type dateColumn struct {
 
 // rows hands the rows below the header on.
 func (t *table) rows() error {
-	r := &rowReader{table: t, sized: t.hasSize(), nextYear: t.nextYear(), first: map[string]occurrence{}, dated: map[string]sighting{}, merged: map[int]sheet.Cell{}}
+	r := &rowReader{table: t, sized: t.hasSize(), nextYear: t.nextYear(), first: map[string]occurrence{}, dated: map[string]sighting{}}
 	r.thisYear = max(r.nextYear-1, 0)
 	r.id = t.plan.Columns(header.IDKey)[0]
 	for _, k := range []string{header.SurveyDateKey, header.DataDateKey, header.DataYearKey} {
@@ -319,65 +308,6 @@ func cellDate(c sheet.Cell, order cell.DayOrder) (string, cell.Status) {
 	return cell.ParseDate(strings.TrimSuffix(c.Text, ".0"), order)
 }
 
-// once lets an id through once, or once for each date or metered year. It
-// reports false for a row that is not to be read, and the date of one that is.
-func (r *rowReader) once(in *sheet.Row, id, date string, fault func(check, column, field, raw, text, fix string)) (bool, string) {
-	h := fnv.New64a()
-	for _, c := range in.Cells {
-		h.Write([]byte(strings.TrimSpace(c.Text)))
-		h.Write([]byte{0})
-	}
-	year := 0
-	if date == "" {
-		year = r.yearOfMeter(in)
-	}
-	duplicate := func(row int) (bool, string) {
-		fault("duplicate-id", r.id.Letters(), header.IDKey, id, fmt.Sprintf("building %s is in row %d already, with other values", id, row), "leave one of the rows, or date them")
-		r.out.SetAside++
-		return false, ""
-	}
-	key := fmt.Sprint(id, "\x00", date, "\x00", year)
-	if o, ok := r.first[key]; ok {
-		if o.hash == h.Sum64() {
-			r.found.add(finding.Finding{Severity: finding.Note, Check: "duplicate-row", Row: in.Number, Column: r.id.Letters(), Field: header.IDKey, Building: id, Raw: id,
-				Text: fmt.Sprintf("the row says the same as row %d and counts once", o.row)})
-			r.out.Used++
-			return false, ""
-		}
-		return duplicate(o.row)
-	}
-	before, again := r.dated[id]
-	if again && date == "" && before.date == "" && (year == 0 || before.year == 0) {
-		return duplicate(before.row)
-	}
-	r.first[key] = occurrence{in.Number, h.Sum64()}
-	if !again {
-		r.dated[id] = sighting{in.Number, date, year}
-		return true, date
-	}
-	r.found.group("versions", finding.Finding{Severity: finding.Note, Check: "versions", Row: in.Number, Column: r.id.Letters(), Field: header.IDKey, Building: id,
-		Text: "the building comes again with another date or metered year; all are kept, the newest counts"})
-	switch {
-	case year == 0:
-	case year > before.year:
-		before.year = year // of rows of one date, the last counts
-		r.dated[id] = before
-	default:
-		date = fmt.Sprintf("%d-12-31", year) // so that it yields to the later reading above
-	}
-	return true, date
-}
-
-// yearOfMeter is the year of the row's meter reading, 0 if it names none.
-func (r *rowReader) yearOfMeter(in *sheet.Row) int {
-	for _, c := range r.plan.Columns(building.MeteredYear.Key()) {
-		if span, st := cell.ParseYear(in.Cell(c.Index).Text, r.thisYear); st == cell.OK {
-			return int(span.High)
-		}
-	}
-	return 0
-}
-
 // idText is an id as text: trimmed, inner blanks single, no ".0" of a number.
 func idText(c sheet.Cell) string {
 	s := strings.Join(strings.Fields(c.Text), " ")
@@ -433,37 +363,4 @@ func (r *rowReader) noBuilding(in *sheet.Row, id string) bool {
 		return true
 	}
 	return false
-}
-
-// spread fills cells that are merged with one above. A number is not spread:
-// it may be the sum of what the rows share.
-func (r *rowReader) spread(in *sheet.Row) {
-	for i, m := range r.merges {
-		if in.Number < m.FirstRow || in.Number > m.LastRow || m.FirstRow == m.LastRow {
-			continue
-		}
-		if in.Number == m.FirstRow {
-			r.merged[i] = in.Cell(m.FirstCol)
-			continue
-		}
-		c, ok := r.merged[i]
-		if !ok || c.Blank() || m.FirstCol == r.id.Index || !in.Cell(m.FirstCol).Blank() {
-			continue
-		}
-		numeric := true
-		for _, fr := range r.fields {
-			for _, k := range fr.columns {
-				if k.Index == m.FirstCol {
-					numeric = fr.field.Info().Type == building.Number
-				}
-			}
-		}
-		if numeric {
-			continue
-		}
-		for len(in.Cells) <= m.FirstCol {
-			in.Cells = append(in.Cells, sheet.Cell{})
-		}
-		in.Cells[m.FirstCol] = c
-	}
 }

@@ -3,6 +3,7 @@ package ingest
 import (
 	"fmt"
 	"math"
+	"regexp"
 	"strconv"
 	"strings"
 
@@ -219,6 +220,8 @@ func (fr *fieldReader) year(thisYear int, in sheet.Cell) (building.Value, cell.S
 	return building.Value{Number: (span.Low + span.High) / 2, Low: span.Low, High: span.High}, st, problem{}
 }
 
+var reCellar = regexp.MustCompile(`^(cellar|basement|keller|unterkeller\w*|unterkellerung|cave|sous sol|kelder|kallare|kalder|kjeller|sotano)\b`)
+
 // isSerial reports whether n can be a day from 1927 to 2064; lower numbers are
 // too near to years.
 func isSerial(n float64) bool { return n >= 10000 && n <= 60000 && n == math.Trunc(n) }
@@ -229,6 +232,14 @@ func (fr *fieldReader) word(c *header.Column, in sheet.Cell) (building.Value, ce
 		// "free sides: 3" counts the other way round.
 		if n, err := strconv.Atoi(strings.TrimSpace(text)); err == nil && n >= 2 && n <= 4 {
 			text = strconv.Itoa(4 - n)
+		}
+	}
+	if fr.field == building.FloorType && c != nil && reCellar.MatchString(cell.Fold(c.Header)) {
+		// "Cellar: yes" names the floor as well as "cellar" does.
+		if yes, st := cell.ParseYesNo(text); st == cell.OK && yes {
+			text = "cellar"
+		} else if st == cell.OK {
+			text = "no cellar"
 		}
 	}
 	w, ok := word.Find(fr.field, text)

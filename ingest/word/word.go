@@ -5,6 +5,7 @@ package word
 import (
 	_ "embed"
 	"encoding/csv"
+	"regexp"
 	"sort"
 	"strings"
 	"unicode/utf8"
@@ -28,6 +29,36 @@ type field struct {
 	long  []synonym // those that may be looked for inside a text, longest first
 }
 
+// alone lists folded words that say what a building is only when nothing stands
+// beside them: an opera house is no house.
+var alone = map[string]bool{
+	"house": true, "home": true, "maison": true, "casa": true, "huis": true, "hus": true, "haus": true,
+	"detached": true, "semi": true, "terrace": true, "terraced": true, "block": true,
+	"ohne": true, "keine": true, "none": true, "sans": true, "aucune": true, "geen": true, "ingen": true, "ninguna": true, "ninguno": true,
+}
+
+const recovery = `(hr|heat recovery|recovery|wrg|warmeruckgewinnung|wtw|warmteterugwinning|recuperation|recuperador|recuperacion|varmegenvinding|varmeatervinning|atervinning|varmegjenvinning|gjenvinning|vgv|thermal wheel|rotary|rotor\w*|plate heat exchanger)\b`
+
+// A word may be made more exact by one beside it, unless that is denied.
+var (
+	reNoRecovery = regexp.MustCompile(`\b(without|no|ohne|sans|zonder|uden|utan|uten|sin) ` + recovery)
+	reRecovery   = regexp.MustCompile(`\b` + recovery)
+	reInsulated  = regexp.MustCompile(`\b(insulated|insulation|filled|fill|gedammt|kerngedammt|dammung|kerndammung|isolee?s?|isolation|geisolerde?|geisoleerde?|gevulde?|isoleret|isolert|isolerad|aislad[oa])\b`)
+	reDenied     = regexp.MustCompile(`\b(no|not|non|without|un|unfilled|ohne|nicht|sans|zonder|niet|uden|ikke|uten|utan|ej|sin)\b`)
+)
+
+// exacter takes a word found in a folded text to the more exact one.
+func exacter(f building.Field, word, folded string) string {
+	switch {
+	case reDenied.MatchString(folded):
+	case f == building.VentilationField && word == building.Balanced.String() && reRecovery.MatchString(folded):
+		return building.BalancedRecovery.String()
+	case f == building.WallConstruction && word == "cavity brick" && reInsulated.MatchString(folded):
+		return "insulated cavity brick"
+	}
+	return word
+}
+
 var fields = func() map[building.Field]*field {
 	m := map[building.Field]*field{}
 	rows, err := csv.NewReader(strings.NewReader(list)).ReadAll()
@@ -49,7 +80,7 @@ var fields = func() map[building.Field]*field {
 			return
 		}
 		m[f].exact[k] = word
-		if utf8.RuneCountInString(k) >= 3 {
+		if utf8.RuneCountInString(k) >= 3 && !(alone[k] && (f == building.UseField || f == building.VentilationField)) {
 			m[f].long = append(m[f].long, synonym{k, word})
 		}
 	}
@@ -89,6 +120,9 @@ func Find(f building.Field, text string) (string, bool) {
 	if w, ok := words.exact[strings.ReplaceAll(t, " ", "")]; ok {
 		return w, true
 	}
+	if f == building.VentilationField {
+		t = reNoRecovery.ReplaceAllString(t, "")
+	}
 	padded := " " + t + " "
 	found, size := "", 0
 	for _, s := range words.long {
@@ -102,7 +136,7 @@ func Find(f building.Field, text string) (string, bool) {
 			found, size = s.word, len(s.folded)
 		}
 	}
-	return found, found != ""
+	return exacter(f, found, t), found != ""
 }
 
 // Nearest returns the canonical word whose writing is most like text, "" if none is.

@@ -42,6 +42,18 @@ func TestFind(t *testing.T) {
 		{building.CarrierField, "Erdgas", "gas"},
 		{building.ExposureField, "frei", "exposed"},
 		{building.AttachmentField, "Reihenmittelhaus", "two sides shared"},
+		{building.UseField, "house", "detached house"},
+		{building.UseField, "Opera house", "hall"},
+		{building.UseField, "Gate house", ""},
+		{building.VentilationField, "mech. supply and extract with HR", "balanced with heat recovery"},
+		{building.VentilationField, "AHU with thermal wheel", "balanced with heat recovery"},
+		{building.VentilationField, "AHU without heat recovery", "balanced"},
+		{building.VentilationField, "RLT ohne WRG", "balanced"},
+		{building.VentilationField, "VMC DF", "balanced with heat recovery"},
+		{building.VentilationField, "ohne", "natural"},
+		{building.WallConstruction, "zweischaliges Mauerwerk mit Kerndämmung", "insulated cavity brick"},
+		{building.WallConstruction, "cavity wall, not insulated", "cavity brick"},
+		{building.WallConstruction, "uninsulated cavity", "cavity brick"},
 		{building.FloorArea, "natural", ""},
 	} {
 		got, ok := Find(tc.field, tc.text)
