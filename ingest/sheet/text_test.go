@@ -241,6 +241,13 @@ func TestBadFiles(t *testing.T) {
 		{"ZipOfSomethingElse", "a.xlsx", "no-workbook", []byte("PK\x05\x06" + strings.Repeat("\x00", 18))},
 		{"TextNamedWorkbook", "a.xlsx", "no-workbook", []byte("id,area\n1,2\n")},
 		{"Binary", "a.csv", "no-text", []byte{1, 0, 2, 0, 0, 0, 7, 8, 0, 1}},
+		{"WebPageNamedWorkbook", "a.xls", "no-table", []byte("\xef\xbb\xbf\n<HTML><table><tr><td>id")},
+		{"XML", "a.xml", "no-table", []byte("<?xml version=\"1.0\"?><Workbook/>")},
+		{"JSON", "a.csv", "no-table", []byte(`[{"id": 1, "area": 2}]`)},
+		{"BinaryWorkbook", "a.xlsb", "no-workbook", archive(t, "[Content_Types].xml", "<Types/>", "xl/workbook.bin", "\x83\x01")},
+		{"TextDocument", "a.docx", "no-workbook", archive(t, "[Content_Types].xml", "<Types/>", "word/document.xml", "<w/>")},
+		{"OtherOffice", "a.ods", "no-workbook", archive(t, "mimetype", "x", "content.xml", "<office/>")},
+		{"Archive", "a.zip", "no-workbook", archive(t, "a.csv", "id,area\n1,2\n")},
 		{"OpenQuote", "a.csv", "open-quote", []byte("id,area\n\"1,2\n3,4\n")},
 	} {
 		t.Run(tc.name, func(t *testing.T) {
@@ -254,6 +261,84 @@ func TestBadFiles(t *testing.T) {
 				t.Errorf("says too little: %+v", bad)
 			}
 		})
+	}
+}
+
+// archive packs names and contents, in turn.
+func archive(t *testing.T, parts ...string) []byte {
+	t.Helper()
+	var b bytes.Buffer
+	w := zip.NewWriter(&b)
+	for i := 0; i < len(parts); i += 2 {
+		p, err := w.Create(parts[i])
+		if err != nil {
+			t.Fatal(err)
+		}
+		if _, err := io.WriteString(p, parts[i+1]); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := w.Close(); err != nil {
+		t.Fatal(err)
+	}
+	return b.Bytes()
+}
+
+// What unpacks to more than any sheet of buildings is refused before it fills
+// the memory, whatever part it hides in.
+func TestBombs(t *testing.T) {
+	for _, tc := range []struct {
+		name, check string
+		edit        func(string) string
+	}{
+		{"Columns", "too-wide", func(s string) string { return strings.Replace(s, `r="C1"`, `r="ZZZ1"`, 1) }},
+		{"Cell", "too-wide", func(s string) string {
+			return strings.Replace(s, "<v>100</v>", "<v>"+strings.Repeat("1", maxCellBytes+1)+"</v>", 1)
+		}},
+		{"Merges", "too-big", func(s string) string {
+			return strings.Replace(s, "</sheetData>", "</sheetData><mergeCells>"+strings.Repeat(`<mergeCell ref="A1:A2"/>`, maxMerges+1)+"</mergeCells>", 1)
+		}},
+		{"RowNumber", "damaged-sheet", func(s string) string { return strings.Replace(s, `<row r="10"`, `<row r="99999999"`, 1) }},
+	} {
+		t.Run(tc.name, func(t *testing.T) {
+			t.Parallel()
+			_, err := read(t, write(t, "a.xlsx", workbook(t, tc.edit)))
+			var bad *BadFile
+			if !errors.As(err, &bad) || bad.Check != tc.check {
+				t.Fatalf("error %v, want check %s", err, tc.check)
+			}
+		})
+	}
+	t.Run("Styles", func(t *testing.T) {
+		t.Parallel()
+		b := archive(t,
+			"_rels/.rels", `<Relationships><Relationship Id="a" Type="x/officeDocument" Target="xl/workbook.xml"/></Relationships>`,
+			"xl/_rels/workbook.xml.rels", `<Relationships><Relationship Id="s" Type="x/styles" Target="styles.xml"/></Relationships>`,
+			"xl/workbook.xml", `<workbook><sheets><sheet name="a"/></sheets></workbook>`,
+			"xl/styles.xml", "<styleSheet><cellXfs>"+strings.Repeat(" ", maxOtherBytes)+"</cellXfs></styleSheet>")
+		_, err := read(t, write(t, "a.xlsx", b))
+		var bad *BadFile
+		if !errors.As(err, &bad) || bad.Check != "too-big" {
+			t.Fatalf("error %v, want check too-big", err)
+		}
+	})
+}
+
+func TestNumberFormats(t *testing.T) {
+	for code, want := range map[string]format{
+		"General": plain, "0.00": plain, "0%": asPercent, `0.0" %"`: plain, `0.0\%`: plain, "0.00%;[Red]-0.00%": asPercent,
+		"yyyy-mm-dd": asDate, "dd.mm.yy": asDate, "[h]:mm": plain, `0 "m²/day"`: plain, "mmm yy": asDate,
+	} {
+		got := plain
+		switch {
+		case dateFormat(code):
+			got = asDate
+		case percentFormat(code):
+			got = asPercent
+		}
+		if got != want {
+			t.Errorf("%q: %d, want %d", code, got, want)
+		}
 	}
 }
 
