@@ -31,7 +31,7 @@ func newCollector(file, sheet string) *collector {
 // add lists a finding of a row, or counts it when there are many of its kind.
 func (c *collector) add(f finding.Finding) {
 	f.File, f.Sheet = c.file, c.sheet
-	if f.Severity != finding.Error && f.Row > 0 {
+	if f.Severity != finding.Error && f.Check != finding.DuplicateFirst && f.Row > 0 {
 		k := f.Check + "\x00" + f.Column
 		c.listed[k]++
 		if c.listed[k] > perCheck {

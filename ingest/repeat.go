@@ -38,6 +38,11 @@ func (r *rowReader) once(in *sheet.Row, id, date string, fault func(check, colum
 		year = r.yearOfMeter(in)
 	}
 	duplicate := func(row int) (bool, string) {
+		if !r.told[row] {
+			r.told[row] = true
+			r.found.add(finding.Finding{Severity: finding.Note, Check: finding.DuplicateFirst, Row: row, Column: r.id.Letters(), Field: header.IDKey, Building: id, Raw: id,
+				Text: fmt.Sprintf("the row counts; building %s comes again in row %d with other values", id, in.Number)})
+		}
 		fault("duplicate-id", r.id.Letters(), header.IDKey, id, fmt.Sprintf("building %s is in row %d already, with other values", id, row), "leave one of the rows, or date them")
 		r.out.SetAside++
 		return false, ""

@@ -29,6 +29,7 @@ type rowReader struct {
 	seen     []columnSeen
 	first    map[string]occurrence // by id and date
 	dated    map[string]sighting   // by id
+	told     map[int]bool          // first rows of which is said that they come again
 	upright  []sheet.Merge         // merges that run over rows, by first row
 	begun    int                   // how many of them have begun
 	open     []span                // those that the last row was in
@@ -46,7 +47,7 @@ type dateColumn struct {
 
 // rows hands the rows below the header on.
 func (t *table) rows() error {
-	r := &rowReader{table: t, sized: t.hasSize(), nextYear: t.nextYear(), first: map[string]occurrence{}, dated: map[string]sighting{}}
+	r := &rowReader{table: t, sized: t.hasSize(), nextYear: t.nextYear(), first: map[string]occurrence{}, dated: map[string]sighting{}, told: map[int]bool{}}
 	r.thisYear = max(r.nextYear-1, 0)
 	r.id = t.plan.Columns(header.IDKey)[0]
 	for _, k := range []string{header.SurveyDateKey, header.DataDateKey, header.DataYearKey} {

@@ -32,6 +32,10 @@ func SeverityByWord(w string) (Severity, bool) {
 	return Severity(max(i, 0)), i >= 0
 }
 
+// DuplicateFirst is the check that marks the row which counts where an id comes
+// again: whoever mends the others must see it.
+const DuplicateFirst = "duplicate-first"
+
 // Finding is one thing to say about one place in the input.
 type Finding struct {
 	Severity Severity `json:"severity"`

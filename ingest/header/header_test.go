@@ -303,6 +303,9 @@ volume = none
 	if d := cmp.Diff(want, m.Sections); d != "" {
 		t.Error(d)
 	}
+	if got := len(m.For("register-to-fix.xlsx", "Sheet one")); got != 3 {
+		t.Errorf("%d entries for the sheet of rows to fix, want 3", got)
+	}
 	if got := len(m.For("REGISTER.xlsx", "sheet one")); got != 3 {
 		t.Errorf("%d entries for the sheet, want 3", got)
 	}

@@ -4,6 +4,7 @@ import (
 	"bufio"
 	"fmt"
 	"io"
+	"path/filepath"
 	"strconv"
 	"strings"
 
@@ -42,7 +43,7 @@ func (m *Mapping) For(file, sheet string) []Entry {
 	}
 	var all []Entry
 	for _, s := range m.Sections {
-		if (s.File == "" || strings.EqualFold(s.File, file)) && (s.Sheet == "" || strings.EqualFold(s.Sheet, sheet)) {
+		if (s.File == "" || sameFile(s.File, file)) && (s.Sheet == "" || strings.EqualFold(s.Sheet, sheet)) {
 			for _, e := range s.Entries {
 				e.Named = s.File != "" || s.Sheet != ""
 				all = append(all, e)
@@ -50,6 +51,14 @@ func (m *Mapping) For(file, sheet string) []Entry {
 		}
 	}
 	return all
+}
+
+// sameFile compares file names; rows to fix, NAME-to-fix, are read like the
+// file they came from.
+func sameFile(named, file string) bool {
+	stem := func(s string) string { return strings.TrimSuffix(s, filepath.Ext(s)) }
+	source, mended := strings.CutSuffix(stem(file), "-to-fix")
+	return strings.EqualFold(named, file) || mended && strings.EqualFold(stem(named), source)
 }
 
 // ParseMapping reads a mapping file. Errors name the line.

@@ -24,7 +24,8 @@ const WhatToFix = "what to fix"
 // faults are the findings of one sheet by row.
 type faults map[int][]finding.Finding
 
-// Write writes the rows of sourcePath that report set aside to NAME-to-fix.xlsx
+// Write writes the rows of sourcePath that report set aside, and the first row
+// of an id that comes again, to NAME-to-fix.xlsx
 // or NAME-to-fix.csv in dir and returns its path, "" when there are none. The
 // file is there whole or not at all.
 func Write(ctx context.Context, sourcePath string, report *ingest.Report, dir string) (string, error) {
@@ -41,7 +42,7 @@ func Write(ctx context.Context, sourcePath string, report *ingest.Report, dir st
 	any := false
 	for _, rows := range bySheet {
 		for n, fs := range rows {
-			if !setAside(fs) {
+			if !setAside(fs) && !repeated(fs) {
 				delete(rows, n)
 			}
 		}
@@ -84,6 +85,23 @@ func setAside(fs []finding.Finding) bool {
 	return false
 }
 
+// repeated reports whether a row is the first of several with one id. It goes
+// along, so that its owner can compare, and what comes back as it was is found
+// wrong again.
+func repeated(fs []finding.Finding) bool {
+	for _, f := range fs {
+		if f.Check == finding.DuplicateFirst {
+			return true
+		}
+	}
+	return false
+}
+
+// tell reports whether a finding is written beside its row.
+func tell(f finding.Finding) bool {
+	return f.Severity != finding.Note || f.Check == finding.DuplicateFirst
+}
+
 // whole writes a file beside path and renames it when it is complete.
 func whole(path string, write func(*os.File) error) error {
 	f, err := os.CreateTemp(filepath.Dir(path), ".to-fix-*")
@@ -105,7 +123,7 @@ func whole(path string, write func(*os.File) error) error {
 func reason(fs []finding.Finding) string {
 	var parts []string
 	for _, f := range fs {
-		if f.Severity == finding.Note {
+		if !tell(f) {
 			continue
 		}
 		s := f.Text

@@ -2,6 +2,7 @@ package mend
 
 import (
 	"context"
+	"fmt"
 	"os"
 	"path/filepath"
 	"strings"
@@ -138,7 +139,7 @@ func TestWorkbookComesBackMarked(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	want := [][]string{{"Municipal buildings"}, nil, {"id", "floor area (m2)", "use", "remark"}, {"2", "-50", "hall", "=not a formula"}, {"3", "310", "office"}}
+	want := [][]string{{"Municipal buildings"}, nil, {"id", "floor area (m2)", "use", "remark"}, {"2", "-50", "hall", "=not a formula"}, {"3", "300", "office"}, {"3", "310", "office"}}
 	if d := cmp.Diff(want, rows); d != "" {
 		t.Error(d)
 	}
@@ -157,11 +158,15 @@ func TestWorkbookComesBackMarked(t *testing.T) {
 			t.Errorf("%s is not coloured (%v)", c.Cell, err)
 		}
 	}
-	if d := cmp.Diff([]string{"B4", "A5"}, at); d != "" {
+	if d := cmp.Diff([]string{"B4", "A5", "A6"}, at); d != "" {
 		t.Error(d)
 	}
+	// Sent back as it is, the same rows are at fault.
+	if r := inspect(t, path); r.Used != 1 || r.SetAside != 2 {
+		t.Errorf("sent back: %d used, %d set aside, %v", r.Used, r.SetAside, r.Findings)
+	}
 	// Mended and sent back, it loads.
-	for ref, v := range map[string]any{"B4": 50, "A5": 4} {
+	for ref, v := range map[string]any{"B4": 50, "A6": 4} {
 		if err := out.SetCellValue("Sheet1", ref, v); err != nil {
 			t.Fatal(err)
 		}
@@ -169,7 +174,69 @@ func TestWorkbookComesBackMarked(t *testing.T) {
 	if err := out.SaveAs(path); err != nil {
 		t.Fatal(err)
 	}
-	if r := inspect(t, path); r.Used != 2 || r.SetAside != 0 {
+	if r := inspect(t, path); r.Used != 3 || r.SetAside != 0 {
 		t.Errorf("mended: %d used, %d set aside, %v", r.Used, r.SetAside, r.Findings)
+	}
+}
+
+func TestManyFaultsAreToldInAColumn(t *testing.T) {
+	f := excelize.NewFile()
+	w, err := f.NewStreamWriter("Sheet1")
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i := 1; i <= maxComments+3; i++ {
+		row := []any{i, -5, "school"}
+		if i == 1 {
+			row = []any{"id", "floor area (m2)", "use"}
+		}
+		if err := w.SetRow(fmt.Sprint("A", i), row); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := w.Flush(); err != nil {
+		t.Fatal(err)
+	}
+	source := filepath.Join(t.TempDir(), "town.xlsx")
+	if err := f.SaveAs(source); err != nil {
+		t.Fatal(err)
+	}
+	path := mended(t, source)
+	path = mended(t, path) // and once more from what came back
+	out, err := excelize.OpenFile(path)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer out.Close()
+	rows, err := out.GetRows("Sheet1")
+	if err != nil {
+		t.Fatal(err)
+	}
+	if d := cmp.Diff([]string{"id", "floor area (m2)", "use", WhatToFix}, rows[0]); d != "" {
+		t.Error(d)
+	}
+	if last := rows[len(rows)-1]; len(rows) != maxComments+3 || len(last) != 4 || !strings.Contains(last[3], "negative") || len(rows[1]) != 3 {
+		t.Errorf("%d rows, the last %q, the first %q", len(rows), last, rows[1])
+	}
+}
+
+// A register of several years without the column that tells the year: the rows
+// that come again are set aside, and again when they are sent back as they are.
+func TestRegisterWithoutItsYearsIsFoundWrongAgain(t *testing.T) {
+	b, err := os.ReadFile("../../../shared/data/registers/city-a-energy-benchmarking.csv")
+	if err != nil {
+		t.Skip("no folder ../shared/data")
+	}
+	lines := strings.SplitAfter(strings.TrimPrefix(string(b), "\ufeff"), "\n")[:3000]
+	for i, l := range lines {
+		_, lines[i], _ = strings.Cut(l, ",")
+	}
+	source := save(t, "register.csv", strings.Join(lines, ""))
+	r := inspect(t, source)
+	if r.SetAside < 100 {
+		t.Fatalf("%d rows set aside: the years do not repeat in these lines", r.SetAside)
+	}
+	if again := inspect(t, mended(t, source)); again.SetAside != r.SetAside {
+		t.Errorf("%d rows set aside, %d when sent back", r.SetAside, again.SetAside)
 	}
 }
