@@ -1,61 +1,25 @@
 package balance
 
 import (
-	"bufio"
-	"errors"
-	"io/fs"
 	"math"
-	"os"
-	"path/filepath"
-	"strconv"
-	"strings"
 	"testing"
 
 	"kelvinrow/estimate/airflow"
 	"kelvinrow/estimate/climate"
+	"kelvinrow/estimate/refcase"
 )
 
-// amsterdamFile is an hourly typical year that nobody here wrote.
-var amsterdamFile = filepath.FromSlash("../../../shared/data/weather/amsterdam-iwec.epw")
-
-// hour is what one building feels of an hour of weather.
-type hour struct{ outdoorC, wind10MS, horizontalKWhM2 float64 }
-
-// amsterdam reads the hours by column number, and their monthly means.
-func amsterdam(t *testing.T) (hours []hour, c *climate.Climate) {
+// amsterdam is the hourly typical year, and its monthly means.
+func amsterdam(t *testing.T) (hours []refcase.Hour, c *climate.Climate) {
 	t.Helper()
-	f, err := os.Open(amsterdamFile)
-	if errors.Is(err, fs.ErrNotExist) {
-		t.Skipf("the hourly typical year of Amsterdam is not at %s", amsterdamFile)
-	}
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer f.Close()
+	hours = refcase.Amsterdam(t)
 	c = &climate.Climate{}
-	lines := bufio.NewScanner(f)
-	for n := 1; lines.Scan(); n++ {
-		if n <= 8 { // header
-			continue
-		}
-		fields := strings.Split(lines.Text(), ",")
-		number := func(i int) float64 {
-			x, err := strconv.ParseFloat(fields[i], 64)
-			if err != nil {
-				t.Fatal(err)
-			}
-			return x
-		}
-		h := hour{number(6), number(21), number(13) / 1000}
-		hours = append(hours, h)
-		m := &c.Months[int(number(1))-1]
+	for _, h := range hours {
+		m := &c.Months[h.Month]
 		m.Hours++
-		m.OutdoorC += h.outdoorC
-		m.Wind10M += h.wind10MS
-		m.HorizontalKWhM2 += h.horizontalKWhM2
-	}
-	if err := lines.Err(); err != nil {
-		t.Fatal(err)
+		m.OutdoorC += h.OutdoorC
+		m.Wind10M += h.Wind10MS
+		m.HorizontalKWhM2 += h.GlobalWhM2 / 1000
 	}
 	for i := range c.Months {
 		m := &c.Months[i]
@@ -70,16 +34,16 @@ func amsterdam(t *testing.T) (hours []hour, c *climate.Climate) {
 // set-point at the hour's end, and nothing cools it. Gains are level within the
 // hour; air is that of the hour's weather. The year is run twice to forget how it
 // began. kWh.
-func hourlyNeed(in *Input, hours []hour) float64 {
+func hourlyNeed(in *Input, hours []refcase.Hour) float64 {
 	air := airflow.Prepare(&in.Air)
 	indoor, need := in.IndoorC, 0.0
 	for range 2 {
 		need = 0
 		for _, h := range hours {
-			wk := in.TransmissionWK + air.HeatWK(h.outdoorC, h.wind10MS)
-			gainW := in.InternalGainWM2*in.FloorAreaM2 + in.ApertureHorizontalM2*h.horizontalKWhM2*1000
+			wk := in.TransmissionWK + air.HeatWK(h.OutdoorC, h.Wind10MS)
+			gainW := in.InternalGainWM2*in.FloorAreaM2 + in.ApertureHorizontalM2*h.GlobalWhM2
 			kept := math.Exp(-3600 * wk / in.CapacityJK)
-			free := h.outdoorC + gainW/wk
+			free := h.OutdoorC + gainW/wk
 			end := free + (indoor-free)*kept
 			if end < in.IndoorC {
 				// The level power that ends the hour at the set-point.

@@ -58,6 +58,7 @@ var may = []struct {
 	{"ingest/finding", nil},
 	{"estimate/climate", []string{"estimate/solar"}},
 	{"estimate/solar", nil},
+	{"estimate/refcase", nil},
 	{"estimate/fabric", nil},
 	{"estimate/ground", nil},
 	{"estimate/moisture", nil},
