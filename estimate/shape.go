@@ -32,6 +32,7 @@ func (b *Basis) geometry(r *reader, m *Model) (*geometry.Output, error) {
 	in.RuleStoreys = r.ruleUnless(in.Storeys.Known, "storeys", "", archetype.StoreyCount, y, "")
 	in.FloorThicknessM = r.rule("floor_thickness", "m", archetype.FloorThicknessM, y, "")
 	in.AspectRatio = r.rule("aspect_ratio", "", archetype.AspectRatio, y, "")
+	in.MaxDepthM = r.ruleUnless(in.PerimeterM.Known, "max_depth", "m", archetype.MaxDepthM, y, "")
 	in.WindowRatio = r.ruleUnless(in.WindowM2.Known, "window_ratio", "m2/m2", archetype.WindowRatio, y, "")
 	in.DoorRatio = r.ruleUnless(in.DoorM2.Known, "door_ratio", "m2/m2", archetype.DoorRatio, y, "")
 	in.RoofPitchDeg = r.rule("roof_pitch", "degrees", archetype.RoofPitchDeg, y, m.Facts.RoofType)

@@ -80,6 +80,7 @@ var propertyCatalogue = []PropertyInfo{
 	number(FloorThicknessM, "Floor thickness between storeys", "m", LogNormal, 0.05, 1),
 	number(StoreyCount, "Storeys", "", LogNormal, 1, 60),
 	number(AspectRatio, "Long side / short side of the plan", "", LogNormal, 1, 20),
+	number(MaxDepthM, "Greatest depth of the plan", "m", LogNormal, 5, 500),
 	number(WindowRatio, "Window area per floor area", "m2/m2", LogNormal, 0, 1),
 	number(DoorRatio, "Outside door area per floor area", "m2/m2", LogNormal, 0, 0.2),
 	number(RoofPitchDeg, "Roof pitch", "degrees", LogNormal, 0, 75).by(building.RoofType),

@@ -22,6 +22,7 @@ const (
 	FloorThicknessM  Property = "floor_thickness_m" // m, floor slab between storeys
 	StoreyCount      Property = "storeys"           // -
 	AspectRatio      Property = "aspect_ratio"      // -, long side / short side of the plan
+	MaxDepthM        Property = "max_depth"         // m, greatest depth of the plan
 	WindowRatio      Property = "window_ratio"      // m2 of window per m2 of floor area
 	DoorRatio        Property = "door_ratio"        // m2 of outside door per m2 of floor area
 	RoofPitchDeg     Property = "roof_pitch_deg"    // degrees; roof type

@@ -1,5 +1,6 @@
 // Package geometry derives areas, lengths and volumes of a building from the
-// few that are known, as a rectangular box of equal storeys: A_f floor area, V
+// few that are known, as a rectangular box of equal storeys, longer where the plan
+// would be too deep for daylight, as wings would make it: A_f floor area, V
 // heated volume, h clear storey height, h_ff floor to floor, n_s storeys, A_g
 // footprint, P perimeter, r aspect ratio. Every given value replaces its
 // estimate and nothing else. Left out: setbacks, courtyards, dormers, gable
@@ -50,6 +51,7 @@ type Input struct {
 	RuleStoreys       float64
 	FloorThicknessM   float64
 	AspectRatio       float64 // long side / short side
+	MaxDepthM         float64 // short side at most this, where daylight limits the depth; 0: no limit
 	WindowRatio       float64 // m2 of window per m2 of floor area
 	DoorRatio         float64 // m2 of outside door per m2 of floor area
 	RoofPitchDeg      float64
@@ -88,6 +90,7 @@ const (
 	areaFactor             = 2.0       // footprint times storeys against floor area, either way
 	perimeterFactor        = 4.0       // perimeter against that of the rectangle
 	maxWindowShare         = 0.6       // of the gross wall
+	maxWindowRatio         = 1.0       // given windows against floor area: no glass box has more
 	maxPitchDeg            = 75.0
 )
 
@@ -96,8 +99,8 @@ const (
 // Order: storeys, volume from the gross volume (V = 0.76 V_e up to three
 // storeys, 0.80 V_e above: common practice, German energy-saving ordinance,
 // annex 1), storey height, floor area or volume (V = A_f h), footprint
-// (A_g = A_f/n_s), rectangle (short side sqrt(A_g/r), long side r times that),
-// exposed perimeter, walls (P_e n_s h_ff), windows, doors, roof, ground floor.
+// (A_g = A_f/n_s), rectangle (short side sqrt(A_g/r), long side r times that, or
+// the greatest depth and what length it takes), exposed perimeter, walls (P_e n_s h_ff), windows, doors, roof, ground floor.
 func Derive(in Input) (Output, error) {
 	d := deriver{in: in}
 	d.dropImpossible()
@@ -160,6 +163,7 @@ func (d *deriver) dropImpossible() {
 	if in.AspectRatio < 1 {
 		in.AspectRatio = 1 / in.AspectRatio
 	}
+	in.MaxDepthM = usable(in.MaxDepthM, 0, 1e3, 0)
 	in.WindowRatio = usable(in.WindowRatio, 0, 10, 0)
 	in.DoorRatio = usable(in.DoorRatio, 0, 10, 0)
 	in.RoofPitchDeg = usable(in.RoofPitchDeg, 0, maxPitchDeg, 0)
@@ -246,7 +250,10 @@ func (d *deriver) plan() {
 		}
 	}
 	out.ShortSideM = math.Sqrt(out.FootprintM2 / in.AspectRatio)
-	out.LongSideM = in.AspectRatio * out.ShortSideM
+	if in.MaxDepthM > 0 && !in.PerimeterM.Known {
+		out.ShortSideM = min(out.ShortSideM, in.MaxDepthM)
+	}
+	out.LongSideM = out.FootprintM2 / out.ShortSideM
 	rectangle := 2 * (out.LongSideM + out.ShortSideM)
 	out.PerimeterM = rectangle
 	if p := in.PerimeterM; p.Known {
@@ -285,6 +292,10 @@ func (d *deriver) plan() {
 // envelope settles walls, windows, doors, roof and ground floor.
 func (d *deriver) envelope() {
 	in, out := &d.in, &d.out
+	if w := in.WindowM2; w.Known && w.Value > maxWindowRatio*out.FloorAreaM2 {
+		d.note("window area %.4g m2 set aside: more than the floor area of %.4g m2", w.Value, out.FloorAreaM2)
+		in.WindowM2 = Given{}
+	}
 	out.WindowM2 = in.WindowRatio * out.FloorAreaM2
 	out.DoorM2 = in.DoorRatio * out.FloorAreaM2
 	if in.WindowM2.Known {

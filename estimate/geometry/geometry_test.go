@@ -264,13 +264,43 @@ func TestWindowsAreCapped(t *testing.T) {
 
 	// Known windows are not capped; what cannot be is said.
 	in = house()
-	in.WindowM2 = Known(500)
+	in.Attachment = building.TwoSidesShared
+	in.WindowM2 = Known(100)
 	out = derive(t, in)
-	near(t, "known windows", out.WindowM2, 500, 0)
+	near(t, "known windows", out.WindowM2, 100, 0)
 	near(t, "wall", out.WallM2, 0, 0)
 	if len(out.Notes) != 1 {
 		t.Errorf("notes %q", out.Notes)
 	}
+	// More window than floor is a slip of the pen.
+	in = house()
+	plain := derive(t, in)
+	in.WindowM2 = Known(500)
+	out = derive(t, in)
+	near(t, "impossible windows", out.WindowM2, plain.WindowM2, 0)
+	if len(out.Notes) != 1 || !strings.Contains(out.Notes[0], "set aside") {
+		t.Errorf("notes %q", out.Notes)
+	}
+}
+
+// A plan too deep for daylight is as long as its depth makes it: 1,800 m2 on a
+// depth of 18 m are 100 m long, by hand. A given perimeter knows better.
+func TestDepthIsLimited(t *testing.T) {
+	in := house()
+	in.Use, in.FloorAreaM2, in.Storeys, in.AspectRatio, in.MaxDepthM = building.School, Known(3600), Known(2), 2, 18
+	out := derive(t, in)
+	near(t, "depth", out.ShortSideM, 18, 1e-12)
+	near(t, "length", out.LongSideM, 100, 1e-12)
+	near(t, "perimeter", out.PerimeterM, 236, 1e-12)
+	in.MaxDepthM = 0
+	near(t, "perimeter without limit", derive(t, in).PerimeterM, 180, 1e-12)
+	in.MaxDepthM, in.PerimeterM = 18, Known(200)
+	near(t, "given perimeter", derive(t, in).PerimeterM, 200, 0)
+	// Small plans are as they were.
+	in = house()
+	was := derive(t, in)
+	in.MaxDepthM = 14
+	near(t, "a house", derive(t, in).PerimeterM, was.PerimeterM, 0)
 }
 
 func TestStoreysFollowFromFootprint(t *testing.T) {
