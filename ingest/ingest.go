@@ -7,11 +7,6 @@ package ingest
 import (
 	"encoding/hex"
 	"encoding/json"
-	"fmt"
-	"os"
-	"path/filepath"
-	"slices"
-	"strings"
 
 	"kelvinrow/estimate/building"
 	"kelvinrow/ingest/finding"
@@ -23,6 +18,7 @@ type Options struct {
 	Kind    building.Kind   // how firm its values are; zero means Registered
 	Mapping *header.Mapping // settles what recognition cannot; may be nil
 	Today   string          // "2026-12-01"; the latest year allowed is the next one
+	Name    string          // by which the file is known; "" is its base name
 }
 
 // Sink takes what is read. The first call of Sheet comes before any record of
@@ -34,15 +30,19 @@ type Sink interface {
 
 // Report says how a file was read.
 type Report struct {
-	File     string // base name
+	File     string // by which the file is known, usually its base name
 	SHA256   [32]byte
 	Bytes    int64
 	Date     string // of the data: from its name, from within, or the file's own
+	Own      bool   // a ranked workbook of this program, which is not read back
 	Sheets   []SheetReport
 	Findings []finding.Finding
 	Rows     int // rows of data
 	Used     int // rows taken, if only in part
 	SetAside int // rows not taken
+
+	dateFrom    string // what Date is, in words
+	datedByFile bool   // that rows are dated by it is said
 }
 
 // MarshalJSON writes the hash as hexadecimal digits.
@@ -71,6 +71,8 @@ type SheetReport struct {
 	Rows      int      `json:"rows"`
 	Used      int      `json:"used"`
 	SetAside  int      `json:"set_aside"`
+
+	lines []int // of the column file that had an effect
 }
 
 // Column says what a column is taken for.
@@ -105,66 +107,4 @@ func MappingSheets(reports []*Report) []header.SheetColumns {
 		}
 	}
 	return out
-}
-
-// extensions are those of tables, and of spreadsheets that cannot be read: that
-// one lies in a folder must be said.
-var extensions = []string{".xlsx", ".xlsm", ".csv", ".tsv", ".txt", ".xls", ".xlsb", ".ods"}
-
-// Expand lists the files meant by paths: folders stand for the spreadsheets in
-// them, patterns for what they match. Files to fix, hidden files and the lock
-// files of spreadsheet programs are left out of folders and patterns.
-func Expand(paths []string) ([]string, error) {
-	var out []string
-	add := func(p string) {
-		if !slices.Contains(out, p) {
-			out = append(out, p)
-		}
-	}
-	for _, p := range paths {
-		st, err := os.Stat(p)
-		switch {
-		case err == nil && st.IsDir():
-			entries, err := os.ReadDir(p) // sorted by name
-			if err != nil {
-				return nil, err
-			}
-			n := 0
-			for _, e := range entries {
-				if !e.IsDir() && wanted(e.Name()) {
-					add(filepath.Join(p, e.Name()))
-					n++
-				}
-			}
-			if n == 0 {
-				return nil, fmt.Errorf("no spreadsheet in folder %s", p)
-			}
-		case err == nil:
-			add(p)
-		case strings.ContainsAny(p, "*?["):
-			found, gerr := filepath.Glob(p)
-			if gerr != nil {
-				return nil, fmt.Errorf("pattern %s: %w", p, gerr)
-			}
-			n := 0
-			for _, f := range found {
-				if st, err := os.Stat(f); err == nil && !st.IsDir() && wanted(filepath.Base(f)) {
-					add(f)
-					n++
-				}
-			}
-			if n == 0 {
-				return nil, fmt.Errorf("no spreadsheet matches %s", p)
-			}
-		default:
-			return nil, err
-		}
-	}
-	return out, nil
-}
-
-func wanted(name string) bool {
-	ext := strings.ToLower(filepath.Ext(name))
-	stem := strings.TrimSuffix(name, filepath.Ext(name))
-	return slices.Contains(extensions, ext) && !strings.HasPrefix(name, ".") && !strings.HasPrefix(name, "~$") && !strings.HasSuffix(stem, "-to-fix")
 }

@@ -258,11 +258,12 @@ func TestMappingFile(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
+	m.Name = "columns.txt"
 	r, k := load(t, csvFile(t, "Kennzeichen,X,year built\nS1,1000,1950\n"), Options{Mapping: m})
 	if len(k.records) != 1 {
 		t.Fatalf("findings %v", r.Findings)
 	}
-	if v, _ := k.get("S1", building.UseField); v.Text != "school" || k.sheets[0].Columns[building.UseField] != "constant" {
+	if v, _ := k.get("S1", building.UseField); v.Text != "school" || k.sheets[0].Columns[building.UseField] != "constant, line 1 of columns.txt" {
 		t.Errorf("use %q from %q", v.Text, k.sheets[0].Columns[building.UseField])
 	}
 	if v, _ := k.get("S1", building.FloorArea); v.Number != 92.90304 {
@@ -447,7 +448,7 @@ func TestExpand(t *testing.T) {
 		{in("*.csv"), in("a.csv")},
 		{in("a-to-fix.csv", "a.csv", "a.csv"), in("a-to-fix.csv", "a.csv")},
 	} {
-		got, err := Expand(tc.give)
+		got, _, err := Expand(tc.give)
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -456,7 +457,7 @@ func TestExpand(t *testing.T) {
 		}
 	}
 	for _, bad := range [][]string{in("none.csv"), in("*.ods"), {t.TempDir()}} {
-		if _, err := Expand(bad); err == nil {
+		if _, _, err := Expand(bad); err == nil {
 			t.Errorf("%v is no error", bad)
 		}
 	}

@@ -31,7 +31,10 @@ func ReadFile(ctx context.Context, path string, opt Options, sink Sink) (*Report
 	if opt.Kind == building.Default {
 		opt.Kind = building.Registered
 	}
-	r := &Report{File: filepath.Base(path)}
+	r := &Report{File: opt.Name}
+	if r.File == "" {
+		r.File = filepath.Base(path)
+	}
 	fault := func(err error) (*Report, error) {
 		if e := ctx.Err(); e != nil {
 			return nil, fmt.Errorf("read %s: %w", path, e)
@@ -54,7 +57,13 @@ func ReadFile(ctx context.Context, path string, opt Options, sink Sink) (*Report
 		return fault(err)
 	}
 	defer book.Close()
-	r.Date = fileDate(r.File, book.Modified(), content.Changed)
+	if own(path, book) {
+		r.Own = true
+		r.Findings = append(r.Findings, finding.Finding{Severity: finding.Note, Check: finding.OwnWorkbook, File: r.File,
+			Text: "the file is a ranked workbook of this program and is not read: its defaults would come back as if they were known", Fix: "give the spreadsheets that it was made from"})
+		return r, nil
+	}
+	r.Date, r.dateFrom = fileDate(filepath.Base(path), book.Modified(), content.Changed)
 	read := false
 	for i, info := range book.Sheets() {
 		t := &table{ctx: ctx, book: book, index: i, info: info, opt: opt, report: r, sink: sink, found: newCollector(r.File, info.Name)}
@@ -94,19 +103,19 @@ var (
 )
 
 // fileDate is the date of a file's data: in its name, in its properties, or of
-// the file itself.
-func fileDate(name, modified, changed string) string {
+// the file itself. from says which of the three.
+func fileDate(name, modified, changed string) (date, from string) {
 	if m := reNameDate.FindStringSubmatch(name); m != nil {
 		if d, st := cell.ParseDate(m[1]+"-"+m[2]+"-"+m[3], cell.DayFirst); st == cell.OK {
-			return d
+			return d, "in the file's name"
 		}
 	}
 	// Some programs leave this date in every file they write.
 	const unset = "2006-09-16"
 	if d, st := cell.ParseDate(modified, cell.DayFirst); st == cell.OK && d != unset {
-		return d
+		return d, "on which the file says it was last saved"
 	}
-	return changed
+	return changed, "on which the file was last changed"
 }
 
 // titleDate finds "Stand: 1.3.2026" and the like in the rows above the header.

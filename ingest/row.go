@@ -3,6 +3,7 @@ package ingest
 import (
 	"fmt"
 	"regexp"
+	"slices"
 	"strings"
 
 	"kelvinrow/estimate/building"
@@ -22,7 +23,6 @@ type rowReader struct {
 	dates     []dateColumn
 	house     *header.Column
 	constants []building.Value
-	sized     bool
 	nextYear  int
 	thisYear  int
 
@@ -47,7 +47,7 @@ type dateColumn struct {
 
 // rows hands the rows below the header on.
 func (t *table) rows() error {
-	r := &rowReader{table: t, sized: t.hasSize(), nextYear: t.nextYear(), first: map[string]occurrence{}, dated: map[string]sighting{}, told: map[int]bool{}}
+	r := &rowReader{table: t, nextYear: t.nextYear(), first: map[string]occurrence{}, dated: map[string]sighting{}, told: map[int]bool{}}
 	r.thisYear = max(r.nextYear-1, 0)
 	r.id = t.plan.Columns(header.IDKey)[0]
 	for _, k := range []string{header.SurveyDateKey, header.DataDateKey, header.DataYearKey} {
@@ -83,7 +83,7 @@ func (r *rowReader) readConstants() {
 		v, st, problem := fr.value(r.thisYear, nil, sheet.Cell{Kind: sheet.Text, Text: e.Constant}, e.Unit)
 		if st != cell.OK {
 			r.found.add(finding.Finding{Severity: finding.Warning, Check: "mapping", Field: e.Field, Raw: e.Constant,
-				Text: fmt.Sprintf("line %d of the column file: %s", e.Line, problem.Text), Fix: problem.Fix})
+				Text: fmt.Sprintf("line %d of %s: %s", e.Line, r.opt.Mapping.Called(), problem.Text), Fix: problem.Fix})
 			continue
 		}
 		v.Field, v.Kind = f, r.opt.Kind
@@ -127,7 +127,12 @@ func (r *rowReader) row(in *sheet.Row) error {
 	}
 	ok := r.read(in, id, surveyed)
 	r.meterYear(in)
-	for _, p := range check.Row(&r.values, r.nextYear) {
+	had := r.rowSized()
+	problems := check.Row(&r.values, r.nextYear)
+	if had && !r.rowSized() {
+		sizeless(problems)
+	}
+	for _, p := range problems {
 		f := finding.Finding{Severity: p.Severity, Check: p.Check, Row: in.Number, Field: p.Field.Key(), Building: id, Text: p.Text, Fix: p.Fix}
 		if c := r.columnOf[p.Field]; c != nil {
 			f.Column, f.Raw = c.Letters(), in.Cell(c.Index).Text
@@ -140,6 +145,9 @@ func (r *rowReader) row(in *sheet.Row) error {
 		return nil
 	}
 	r.out.Used++
+	if date == "" {
+		r.undated++
+	}
 	r.record = building.Record{Building: id, Sheet: r.building, Row: in.Number, SurveyDate: date, Values: r.record.Values[:0]}
 	for f := range building.NumFields {
 		if v := r.values[f]; v != nil {
@@ -192,10 +200,7 @@ func (r *rowReader) read(in *sheet.Row, id string, surveyed bool) bool {
 		}
 	}
 	if spoilt != nil {
-		none := true
-		for _, f := range []building.Field{building.FloorArea, building.Volume, building.GrossVolume} {
-			none = none && r.values[f] == nil
-		}
+		none := !r.rowSized()
 		if none {
 			spoilt.Severity = finding.Error
 			spoilt.Text += ", and the row has no other size"
@@ -204,6 +209,24 @@ func (r *rowReader) read(in *sheet.Row, id string, surveyed bool) bool {
 		return !none
 	}
 	return true
+}
+
+// rowSized reports whether the row gives any size.
+func (r *rowReader) rowSized() bool {
+	return r.values[building.FloorArea] != nil || r.values[building.Volume] != nil || r.values[building.GrossVolume] != nil
+}
+
+// sizeless makes an error of the last of the problems that set a size aside: a
+// row that brought a size and keeps none is no use.
+func sizeless(problems []check.Problem) {
+	for i := len(problems) - 1; i >= 0; i-- {
+		p := &problems[i]
+		if slices.ContainsFunc(p.Drop, size) {
+			p.Severity = finding.Error
+			p.Text += ", and the row has no other size"
+			return
+		}
+	}
 }
 
 // reMiddle tells a terraced house between two others from one that may be anywhere.

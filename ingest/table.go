@@ -4,7 +4,6 @@ import (
 	"context"
 	"errors"
 	"fmt"
-	"slices"
 	"strconv"
 	"strings"
 
@@ -44,6 +43,7 @@ type table struct {
 	layout   header.Table
 	plan     *header.Plan
 	building *building.Sheet
+	undated  int // rows without a date of their own
 }
 
 // read returns an error only for what keeps the run from going on.
@@ -71,6 +71,7 @@ func (t *table) read() error {
 	}
 	t.out.HeaderRow, t.out.DataFrom = t.layout.Row, t.layout.DataFrom
 	t.plan = header.Settle(&t.layout, mapped)
+	t.out.lines = t.plan.Lines
 	if t.plan.Skip != "" {
 		t.skip(t.plan.Skip)
 		t.describe(nil)
@@ -103,7 +104,11 @@ func (t *table) read() error {
 	if err := t.sink.Sheet(t.building); err != nil {
 		return err
 	}
-	return t.rows()
+	if err := t.rows(); err != nil {
+		return err
+	}
+	t.afterwards()
+	return nil
 }
 
 // skip says why a sheet is not read.
@@ -235,7 +240,7 @@ func (t *table) sheet() *building.Sheet {
 	}
 	for _, e := range t.plan.Constants {
 		if f, ok := building.FieldByKey(e.Field); ok {
-			s.Columns[f] = "constant"
+			s.Columns[f] = fmt.Sprintf("constant, line %d of %s", e.Line, t.opt.Mapping.Called())
 		}
 	}
 	if use := t.plan.Columns(building.UseField.Key()); len(use) > 0 && !t.plan.Has(building.AttachmentField.Key()) {
@@ -262,80 +267,6 @@ func (t *table) carrierFromMeter() bool {
 
 func (t *table) hasSize() bool {
 	return t.plan.Has(building.FloorArea.Key()) || t.plan.Has(building.Volume.Key()) || t.plan.Has(building.GrossVolume.Key())
-}
-
-// remarks says once per sheet what holds for all its rows.
-func (t *table) remarks() {
-	remark := func(sev finding.Severity, check string, f building.Field, c *header.Column, text, fix string) {
-		x := finding.Finding{Severity: sev, Check: check, Field: f.Key(), Text: text, Fix: fix}
-		if c != nil {
-			x.Column = c.Letters()
-		}
-		t.found.add(x)
-	}
-	for _, pf := range t.plan.Fields {
-		f, ok := building.FieldByKey(pf.Key)
-		if !ok {
-			continue
-		}
-		for _, c := range pf.Columns {
-			switch {
-			case c.Sense == "gross":
-				remark(finding.Note, "gross-area", f, c, fmt.Sprintf("gross floor area %q is taken as heated floor area", c.Header), "give the heated area if it is known")
-			case c.Sense == "renovation":
-				remark(finding.Note, "renovation-year", f, c, fmt.Sprintf("year of renovation %q is taken as the year of the windows", c.Header), "say in a column file what was renewed: year_roof = "+c.Letters()+", or year_windows = none")
-			case f == building.MeteredHeat && (c.Sense == "gas" || c.Sense == "oil"):
-				remark(finding.Note, "fuel-as-heat", f, c, fmt.Sprintf("%q is taken as metered heat, cooking and hot water included", c.Header), "")
-			}
-			if c.Unit.Note != "" {
-				remark(finding.Note, "unit-converted", f, c, c.Unit.Note, "")
-			}
-			if c.Unit.Name == "" && (f == building.FloorArea || f == building.Volume || f == building.MeteredHeat) {
-				remark(finding.Note, "unit-assumed", f, c, fmt.Sprintf("%q names no unit and is taken as %s, but where a cell says otherwise", c.Header, f.Info().Unit), fmt.Sprintf("put the unit into the header, or %s [unit] = %s into a column file", pf.Key, c.Letters()))
-			}
-		}
-	}
-	if !t.hasSize() {
-		t.noSize()
-		return
-	}
-	if !t.plan.Has(building.UseField.Key()) {
-		remark(finding.Warning, "no-use", building.UseField, nil, "no column says what the buildings are used for", "add one, or give use = constant:\"school\" in a column file")
-	}
-	if dated := slices.ContainsFunc(ages, func(f building.Field) bool { return t.plan.Has(f.Key()) }); !dated {
-		remark(finding.Warning, "no-year", building.YearBuilt, nil, "no column says when the buildings were built or renewed", "add one if it is known")
-	}
-	if !t.plan.Has(building.VentilationField.Key()) {
-		remark(finding.Warning, "no-ventilation", building.VentilationField, nil, "no column says how the buildings are ventilated; all count as unknown", "add a column, even where it says \"unknown\" for some")
-	}
-}
-
-// ages are the fields of which one at least says how old a building is.
-var ages = []building.Field{building.YearBuilt, building.YearWall, building.YearRoof, building.YearFloor, building.YearWindows}
-
-// noSize says that rows without a size only add to what other sheets bring,
-// and which columns could be one after all.
-func (t *table) noSize() {
-	f := finding.Finding{Severity: finding.Note, Check: "no-size", Field: building.FloorArea.Key(),
-		Text: "no column is recognised as floor area or volume, so the rows only add to buildings whose size another sheet gives"}
-	var names []string
-	for i := range t.layout.Columns {
-		c := &t.layout.Columns[i]
-		if c.Key != "" || c.Index >= len(t.evidence) || c.Ignored() || cell.ForeignUnit(c.Header) {
-			continue
-		}
-		if e := t.evidence[c.Index]; e.Filled > 1 && e.Numbers*10 >= (e.Filled-1)*8 {
-			names = append(names, fmt.Sprintf("%s %q", c.Letters(), c.Header))
-			f.Column += "," + c.Letters()
-		}
-	}
-	if len(names) > 0 {
-		f.Severity = finding.Warning
-		f.Column = f.Column[1:]
-		f.Text += "; it could be one of " + strings.Join(names, ", ")
-		f.Fix = fmt.Sprintf("say which in a column file: floor_area = %s", strings.Split(f.Column, ",")[0])
-	}
-	t.found.add(f)
 }
 
 // describe fills the report's columns.

@@ -168,7 +168,7 @@ func (fr *fieldReader) unit(c *header.Column, own cell.Unit, constant string) ce
 
 // text reads a written number with the decimal sign of its column.
 func (fr *fieldReader) text(c *header.Column, s string) (cell.Number, cell.Status, problem) {
-	d, decided := cell.Undecided, true
+	d, decided := cell.Undecided, false // a constant is of no column
 	for i := range fr.columns {
 		if fr.columns[i] == c {
 			d, decided = fr.decimal[i], fr.decided[i]

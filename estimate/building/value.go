@@ -41,7 +41,7 @@ type Sheet struct {
 	File     string            // base name of the file
 	Name     string            // sheet name; "" for CSV
 	FileDate string            // "2026-03-01": date of the data where the sheet tells, else the file's date
-	Columns  [NumFields]string // column letters by field, "" where absent; "constant" where a mapping set the value
+	Columns  [NumFields]string // column letters by field, "" where absent; "constant, ..." where a mapping set the value
 }
 
 // Value is one field of one building, from one cell.

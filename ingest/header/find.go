@@ -2,6 +2,7 @@ package header
 
 import (
 	"fmt"
+	"slices"
 	"sort"
 	"strings"
 
@@ -62,9 +63,24 @@ func Find(lines []Line, merges []sheet.Merge, evidence []Evidence, mapped []Entr
 		}
 	}
 	if bestScore >= 4 {
+		best.lettered(evidence, mapped)
 		return best, true
 	}
 	return bare(lines, mapped)
+}
+
+// lettered adds the filled columns without a header that a mapping names.
+func (t *Table) lettered(evidence []Evidence, mapped []Entry) {
+	for _, e := range mapped {
+		c, ok := sheet.ColumnIndex(e.Column)
+		if !ok || e.Fixed || e.Unread || c >= len(evidence) || evidence[c].Filled == 0 {
+			continue
+		}
+		if !slices.ContainsFunc(t.Columns, func(k Column) bool { return k.Index == c }) {
+			t.Columns = append(t.Columns, Column{Index: c})
+		}
+	}
+	slices.SortStableFunc(t.Columns, func(a, b Column) int { return a.Index - b.Index })
 }
 
 // bare finds a table without a header by the letters of a mapping: from the

@@ -13,7 +13,10 @@ import (
 )
 
 // Mapping says which column is what, where recognition cannot or should not.
-type Mapping struct{ Sections []Section }
+type Mapping struct {
+	Name     string // of the file it was read from, for messages and origins
+	Sections []Section
+}
 
 // Section holds the entries for one sheet, or for all where File and Sheet are
 // empty.
@@ -35,6 +38,14 @@ type Entry struct {
 	Line     int
 }
 
+// Called names the mapping in messages.
+func (m *Mapping) Called() string {
+	if m == nil || m.Name == "" {
+		return "the column file"
+	}
+	return m.Name
+}
+
 // For returns the entries that hold for a sheet: the general ones, then those
 // of its section, which win.
 func (m *Mapping) For(file, sheet string) []Entry {
@@ -43,7 +54,7 @@ func (m *Mapping) For(file, sheet string) []Entry {
 	}
 	var all []Entry
 	for _, s := range m.Sections {
-		if (s.File == "" || sameFile(s.File, file)) && (s.Sheet == "" || strings.EqualFold(s.Sheet, sheet)) {
+		if s.About(file) && (s.Sheet == "" || strings.EqualFold(s.Sheet, sheet)) {
 			for _, e := range s.Entries {
 				e.Named = s.File != "" || s.Sheet != ""
 				all = append(all, e)
@@ -53,12 +64,17 @@ func (m *Mapping) For(file, sheet string) []Entry {
 	return all
 }
 
-// sameFile compares file names; rows to fix, NAME-to-fix, are read like the
-// file they came from.
-func sameFile(named, file string) bool {
+// About reports whether a section is about a file of this name, or about any.
+// The rows to fix of a file are in its layout, so what is said of a file holds
+// for them too; a name without folders is that of the file in any of them.
+func (s Section) About(file string) bool {
 	stem := func(s string) string { return strings.TrimSuffix(s, filepath.Ext(s)) }
-	source, mended := strings.CutSuffix(stem(file), "-to-fix")
-	return strings.EqualFold(named, file) || mended && strings.EqualFold(stem(named), source)
+	same := func(named, file string) bool {
+		source, mended := strings.CutSuffix(stem(file), "-to-fix")
+		return strings.EqualFold(named, file) || mended && strings.EqualFold(stem(named), source)
+	}
+	named := filepath.ToSlash(s.File)
+	return named == "" || same(named, file) || same(named, filepath.Base(file))
 }
 
 // ParseMapping reads a mapping file. Errors name the line.
@@ -150,7 +166,10 @@ func parseEntry(line string) (Entry, error) {
 	}
 	e.Field = strings.ToLower(strings.ReplaceAll(e.Field, " ", "_"))
 	if !KnownKey(e.Field) {
-		return Entry{}, fmt.Errorf("there is no field %q; did you mean %q?", e.Field, nearestKey(e.Field))
+		if near := nearestKey(e.Field); near != "" {
+			return Entry{}, fmt.Errorf("there is no field %q; did you mean %q?", e.Field, near)
+		}
+		return Entry{}, fmt.Errorf("there is no field %q; the fields are listed in what inspect --columns-out writes", e.Field)
 	}
 	if e.Unit != "" {
 		u, ok := cell.ParseUnit(e.Unit)

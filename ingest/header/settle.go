@@ -17,6 +17,7 @@ type Plan struct {
 	Constants []Entry
 	Problems  []Problem
 	Skip      string // not empty: no sheet of buildings, and why
+	Lines     []int  // lines of the column file that had an effect, or a later one instead
 }
 
 // PlanField is one field and the columns that give it.
@@ -101,7 +102,11 @@ func (s *settler) mapping(mapped []Entry) {
 	}
 	for i, e := range mapped {
 		if last[e.Field] != i {
+			s.p.Lines = append(s.p.Lines, e.Line)
 			continue
+		}
+		if e.Unread || e.Fixed {
+			s.p.Lines = append(s.p.Lines, e.Line)
 		}
 		switch {
 		case e.Unread:
@@ -120,6 +125,7 @@ func (s *settler) mapping(mapped []Entry) {
 			continue
 		}
 		s.closed[e.Field] = true
+		s.p.Lines = append(s.p.Lines, e.Line)
 		unit := cell.Unit{}
 		for _, k := range c.candidates {
 			if k.Key == e.Field {

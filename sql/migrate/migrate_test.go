@@ -180,6 +180,8 @@ func TestRolesMayDoWhatTheyNeedAndNoMore(t *testing.T) {
 		{"loader", "sheet", "select insert delete"},
 		{"loader", "record", "select insert delete"}, // rows are never changed
 		{"loader", "finding", "select insert delete"},
+		{"loader", "superseded", "select insert delete"},
+		{"reader", "superseded", "select"},
 		{"loader", "run", "select"},
 		{"loader", "run_building", "select"},
 		{"screener", "record", "select insert delete"},

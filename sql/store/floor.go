@@ -17,7 +17,7 @@ import (
 func (s *Store) CopyFloor(ctx context.Context, portfolio string) (seconds float64, err error) {
 	var all []building.Record
 	err = s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
-		return records(ctx, tx, portfolio, nil, func(r building.Record) error {
+		return records(ctx, tx, portfolio, "", nil, func(r building.Record) error {
 			all = append(all, r)
 			return nil
 		})

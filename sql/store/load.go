@@ -26,8 +26,9 @@ type Load struct {
 	summary   LoadSummary
 
 	source, sheets int64 // numbers given last
+	before         int64 // number of the last sheet that was there before
 	open           bool  // a source is registered and takes sheets and findings
-	findings       int
+	findings       map[int64]int
 	failed         error // the transaction is lost
 
 	// Records are collected in one batch while the other is on its way to the
@@ -48,21 +49,13 @@ type LoadSummary struct {
 	Sources, Records int
 }
 
-// Source is one loaded file.
-type Source struct {
-	File     string
-	FileDate string
-	Bytes    int64
-	Load     int64
-}
-
 // BeginLoad starts a load. Loads of one portfolio wait for each other.
 func (s *Store) BeginLoad(ctx context.Context, portfolio string) (*Load, error) {
 	tx, err := s.begin(ctx, portfolio, false)
 	if err != nil {
 		return nil, err
 	}
-	l := &Load{s: s, tx: tx, portfolio: portfolio}
+	l := &Load{s: s, tx: tx, portfolio: portfolio, findings: map[int64]int{}}
 	err = s.serialise(ctx, tx, "load", portfolio)
 	if err == nil {
 		err = tx.QueryRow(ctx, `insert into kelvinrow.portfolio (portfolio, loads) values ($1, 1)
@@ -72,53 +65,13 @@ func (s *Store) BeginLoad(ctx context.Context, portfolio string) (*Load, error) 
 		err = tx.QueryRow(ctx, `select
 			(select coalesce(max(source), 0) from kelvinrow.source where portfolio = $1),
 			(select coalesce(max(sheet), 0) from kelvinrow.sheet where portfolio = $1)`, portfolio).Scan(&l.source, &l.sheets)
+		l.before = l.sheets
 	}
 	if err != nil {
 		l.Rollback()
 		return nil, fmt.Errorf("begin a load of portfolio %q: %w", portfolio, err)
 	}
 	return l, nil
-}
-
-// Source registers a file. It returns true, and the file must not be loaded,
-// where the same content is in the store already, under whatever name. Content
-// loaded earlier under the same name is replaced.
-func (l *Load) Source(ctx context.Context, file string, sha256 [32]byte, date string, bytes int64) (already bool, err error) {
-	if err := l.settle(ctx); err != nil {
-		return false, err
-	}
-	file = clean(file)
-	l.open = false
-	already, err = l.register(ctx, file, sha256, date, bytes)
-	if err != nil {
-		return false, fmt.Errorf("store source %s: %w", file, err)
-	}
-	l.open = !already
-	return already, nil
-}
-
-func (l *Load) register(ctx context.Context, file string, sha256 [32]byte, date string, bytes int64) (already bool, err error) {
-	err = l.tx.QueryRow(ctx, "select exists (select from kelvinrow.source where portfolio = $1 and sha256 = $2)", l.portfolio, sha256[:]).Scan(&already)
-	if err != nil || already {
-		return already, err
-	}
-	// Sheets and findings go with their source; records have no foreign key of
-	// their own, which would be checked for each of a million rows.
-	_, err = l.tx.Exec(ctx, `delete from kelvinrow.record r using kelvinrow.sheet h, kelvinrow.source s
-		where s.portfolio = $1 and s.file = $2 and h.portfolio = $1 and h.source = s.source
-		and r.portfolio = $1 and r.sheet = h.sheet`, l.portfolio, file)
-	if err != nil {
-		return false, err
-	}
-	if _, err := l.tx.Exec(ctx, "delete from kelvinrow.source where portfolio = $1 and file = $2", l.portfolio, file); err != nil {
-		return false, err
-	}
-	l.source++
-	l.findings = 0
-	l.summary.Sources++
-	_, err = l.tx.Exec(ctx, `insert into kelvinrow.source (portfolio, source, file, sha256, file_date, bytes, load)
-		values ($1, $2, $3, $4, $5, $6, $7)`, l.portfolio, l.source, file, sha256[:], date, bytes, l.summary.Number)
-	return false, err
 }
 
 var errNoSource = errors.New("no source is being loaded")
@@ -320,19 +273,19 @@ func kinds(values []building.Value) (building.Kind, []string) {
 var findingColumns = []string{"portfolio", "source", "number", "severity", "check_name", "file", "sheet", "row_number",
 	"column_letters", "field", "building", "raw", "message", "fix"}
 
-// Findings stores findings of the current source.
-func (l *Load) Findings(ctx context.Context, fs []finding.Finding) error {
+// Findings stores findings of a source of this load.
+func (l *Load) Findings(ctx context.Context, source int64, fs []finding.Finding) error {
 	if err := l.settle(ctx); err != nil {
 		return err
 	}
-	if !l.open {
+	if _, ok := l.findings[source]; !ok {
 		return errNoSource
 	}
 	r := &rows{columns: findingColumns, n: len(fs), encode: func(e *encoder, i int) error {
 		f := &fs[i]
 		e.text(l.portfolio)
-		e.bigint(l.source)
-		e.integer(int32(l.findings + i + 1))
+		e.bigint(source)
+		e.integer(int32(l.findings[source] + i + 1))
 		for _, s := range [...]string{f.Severity.String(), f.Check, f.File, f.Sheet} {
 			e.text(s)
 		}
@@ -345,7 +298,7 @@ func (l *Load) Findings(ctx context.Context, fs []finding.Finding) error {
 	if _, err := l.s.copyInto(ctx, l.tx, "finding", r); err != nil {
 		return fmt.Errorf("store findings: %w", err)
 	}
-	l.findings += len(fs)
+	l.findings[source] += len(fs)
 	return nil
 }
 

@@ -19,7 +19,7 @@ func begin(t testing.TB, s *Store, portfolio, file string, content byte) (*Load,
 	t.Helper()
 	l, err := s.BeginLoad(context.Background(), portfolio)
 	must(t, err)
-	_, err = l.Source(context.Background(), file, [32]byte{content}, "2026-01-01", 1)
+	_, _, err = l.Source(context.Background(), File{Name: file, SHA256: [32]byte{content}, Date: "2026-01-01", Bytes: 1})
 	must(t, err)
 	sh := &building.Sheet{File: file, Name: "S", FileDate: "2026-01-01"}
 	must(t, l.Sheet(context.Background(), sh))
@@ -79,7 +79,7 @@ func TestLoadsOfOnePortfolioWaitForEachOther(t *testing.T) {
 			return err
 		}
 		defer l.Rollback()
-		already, err := l.Source(context.Background(), "b.csv", [32]byte{1}, "", 1)
+		already, _, err := l.Source(context.Background(), File{Name: "b.csv", SHA256: [32]byte{1}, Date: "", Bytes: 1})
 		if err == nil && !already {
 			err = errors.New("does not see what the first load brought")
 		}

@@ -19,7 +19,7 @@ func nearIDs(ctx context.Context, tx pgx.Tx, portfolio, id string) ([]string, er
 	if len(want) == 0 {
 		return nil, nil
 	}
-	rows, err := tx.Query(ctx, "select distinct building from kelvinrow.record where portfolio = $1 order by building", portfolio)
+	rows, err := tx.Query(ctx, "select distinct building from kelvinrow.record where portfolio = $1"+counting+" order by building", portfolio)
 	if err != nil {
 		return nil, err
 	}

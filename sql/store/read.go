@@ -16,10 +16,16 @@ import (
 	"kelvinrow/ingest/finding"
 )
 
+// counting keeps records of superseded sources out of a query of portfolio $1.
+const counting = ` and sheet not in (select h.sheet from kelvinrow.superseded x join kelvinrow.sheet h using (portfolio, source) where x.portfolio = $1)`
+
+// countingSource does the same for a query of sources or findings s.
+const countingSource = ` and not exists (select from kelvinrow.superseded x where x.portfolio = s.portfolio and x.source = s.source)`
+
 // Count returns how many buildings a portfolio has.
 func (s *Store) Count(ctx context.Context, portfolio string) (n int, err error) {
 	err = s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
-		return tx.QueryRow(ctx, "select count(distinct building) from kelvinrow.record where portfolio = $1", portfolio).Scan(&n)
+		return tx.QueryRow(ctx, "select count(distinct building) from kelvinrow.record where portfolio = $1"+counting, portfolio).Scan(&n)
 	})
 	return n, err
 }
@@ -28,30 +34,40 @@ func (s *Store) Count(ctx context.Context, portfolio string) (n int, err error) 
 // merged from all records about it. They come from one snapshot, held until the
 // last is taken.
 func (s *Store) Buildings(ctx context.Context, portfolio string, yield func(*building.Building) error) error {
-	return s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
-		var group []building.Record
-		flush := func() error {
-			if len(group) == 0 {
-				return nil
-			}
-			err := yield(building.Merge(group[0].Building, group))
-			group = group[:0]
-			return err
-		}
-		err := records(ctx, tx, portfolio, nil, func(r building.Record) error {
-			if len(group) > 0 && group[0].Building != r.Building {
-				if err := flush(); err != nil {
-					return err
-				}
-			}
-			group = append(group, r)
+	return s.Groups(ctx, portfolio, func(b *building.Building, _ []building.Record) error { return yield(b) })
+}
+
+// Groups yields what Buildings does, and with each building the records it is
+// merged from, which are used again after the call.
+func (s *Store) Groups(ctx context.Context, portfolio string, yield func(*building.Building, []building.Record) error) error {
+	return s.within(ctx, portfolio, true, func(tx pgx.Tx) error { return groups(ctx, tx, portfolio, "", nil, yield) })
+}
+
+// groups yields the buildings among those that a condition leaves, whose
+// arguments count from $2.
+func groups(ctx context.Context, tx pgx.Tx, portfolio, condition string, args []any, yield func(*building.Building, []building.Record) error) error {
+	var group []building.Record
+	flush := func() error {
+		if len(group) == 0 {
 			return nil
-		})
-		if err != nil {
-			return err
 		}
-		return flush()
+		err := yield(building.Merge(group[0].Building, group), group)
+		group = group[:0]
+		return err
+	}
+	err := records(ctx, tx, portfolio, condition, args, func(r building.Record) error {
+		if len(group) > 0 && group[0].Building != r.Building {
+			if err := flush(); err != nil {
+				return err
+			}
+		}
+		group = append(group, r)
+		return nil
 	})
+	if err != nil {
+		return err
+	}
+	return flush()
 }
 
 // InputsHash is a hash, in hex, of all that an estimate can see of a portfolio.
@@ -75,7 +91,7 @@ func (s *Store) Building(ctx context.Context, portfolio, id string) (*building.B
 	var found []building.Record
 	var near []string
 	err := s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
-		err := records(ctx, tx, portfolio, &id, func(r building.Record) error {
+		err := records(ctx, tx, portfolio, "building = $2", []any{id}, func(r building.Record) error {
 			found = append(found, r)
 			return nil
 		})
@@ -108,19 +124,18 @@ var binaryResults = pgx.QueryResultFormats{pgx.BinaryFormatCode}
 
 var errNotBinary = errors.New("the connection gives text where binary values are needed: leave default_query_exec_mode out of the database URL")
 
-// records reads the records of a portfolio, or of one building of it, in order
-// of building, sheet and row.
-func records(ctx context.Context, tx pgx.Tx, portfolio string, id *string, yield func(building.Record) error) error {
+// records reads the records of a portfolio that count and meet a condition, ""
+// for all, in order of building, sheet and row.
+func records(ctx context.Context, tx pgx.Tx, portfolio, condition string, args []any, yield func(building.Record) error) error {
 	sheets, err := readSheets(ctx, tx, portfolio)
 	if err != nil {
 		return err
 	}
-	query := "select " + columnList(recordColumns) + " from kelvinrow.record where portfolio = $1"
-	args := []any{binaryResults, portfolio}
-	if id != nil {
-		query += " and building = $2"
-		args = append(args, *id)
+	query := "select " + columnList(recordColumns) + " from kelvinrow.record where portfolio = $1" + counting
+	if condition != "" {
+		query += " and " + condition
 	}
+	args = append([]any{binaryResults, portfolio}, args...)
 	rows, err := tx.Query(ctx, query+" order by building, sheet, row_number", args...)
 	if err != nil {
 		return err
@@ -168,7 +183,7 @@ func readSheets(ctx context.Context, tx pgx.Tx, portfolio string) (map[int64]*bu
 func (s *Store) Findings(ctx context.Context, portfolio string) (out []finding.Finding, err error) {
 	err = s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
 		rows, err := tx.Query(ctx, `select severity, check_name, file, sheet, row_number, column_letters, field, building, raw, message, fix
-			from kelvinrow.finding where portfolio = $1 order by source, number`, portfolio)
+			from kelvinrow.finding s where portfolio = $1`+countingSource+` order by source, number`, portfolio)
 		if err != nil {
 			return err
 		}
@@ -182,19 +197,6 @@ func (s *Store) Findings(ctx context.Context, portfolio string) (out []finding.F
 		return err
 	})
 	finding.Sort(out)
-	return out, err
-}
-
-// Sources lists the files loaded into a portfolio, by name.
-func (s *Store) Sources(ctx context.Context, portfolio string) (out []Source, err error) {
-	err = s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
-		rows, err := tx.Query(ctx, `select file, file_date, bytes, load from kelvinrow.source where portfolio = $1 order by file collate "C"`, portfolio)
-		if err != nil {
-			return err
-		}
-		out, err = pgx.CollectRows(rows, pgx.RowToStructByPos[Source])
-		return err
-	})
 	return out, err
 }
 

@@ -49,7 +49,7 @@ func load(t testing.TB, s *Store, portfolio, file string, content byte, records 
 	l, err := s.BeginLoad(ctx, portfolio)
 	must(t, err)
 	defer l.Rollback()
-	already, err := l.Source(ctx, file, [32]byte{content}, "2026-01-01", 100)
+	already, _, err := l.Source(ctx, File{Name: file, SHA256: [32]byte{content}, Date: "2026-01-01", Bytes: 100})
 	must(t, err)
 	if already {
 		return true
@@ -61,7 +61,7 @@ func load(t testing.TB, s *Store, portfolio, file string, content byte, records 
 		r.Sheet = sh
 		must(t, l.Add(ctx, &r))
 	}
-	must(t, l.Findings(ctx, []finding.Finding{{Severity: finding.Warning, Check: "x", File: file, Sheet: "Sheet 1", Row: 3, Text: "odd"}}))
+	must(t, l.Findings(ctx, l.Last(), []finding.Finding{{Severity: finding.Warning, Check: "x", File: file, Sheet: "Sheet 1", Row: 3, Text: "odd"}}))
 	_, err = l.Commit(ctx)
 	must(t, err)
 	return false
@@ -170,7 +170,7 @@ func TestRolledBackLoadLeavesNothing(t *testing.T) {
 	ctx, cancel := context.WithCancel(t.Context())
 	l, err := s.BeginLoad(ctx, "p")
 	must(t, err)
-	_, err = l.Source(ctx, "a.csv", [32]byte{9}, "", 1)
+	_, _, err = l.Source(ctx, File{Name: "a.csv", SHA256: [32]byte{9}, Date: "", Bytes: 1})
 	must(t, err)
 	sh := &building.Sheet{}
 	must(t, l.Sheet(ctx, sh))
@@ -197,7 +197,7 @@ func loadAndWait(url string) {
 	}
 	l, err := s.BeginLoad(ctx, "p")
 	if err == nil {
-		_, err = l.Source(ctx, "a.csv", [32]byte{7}, "", 1)
+		_, _, err = l.Source(ctx, File{Name: "a.csv", SHA256: [32]byte{7}, Date: "", Bytes: 1})
 	}
 	sh := &building.Sheet{}
 	if err == nil {

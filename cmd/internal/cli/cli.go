@@ -29,6 +29,9 @@ const (
 // errSetAside ends a command that did its work while some rows were set aside.
 var errSetAside = errors.New("some rows were set aside")
 
+// errNothing ends a command of whose files nothing at all could be used.
+var errNothing = errors.New("nothing in the files given could be used (see the findings, or: kelvinrow inspect FILE...)")
+
 // usageError is a command line that cannot be understood.
 type usageError struct{ err error }
 

@@ -1,6 +1,7 @@
 package cli
 
 import (
+	"errors"
 	"fmt"
 	"os"
 	"path/filepath"
@@ -66,6 +67,7 @@ func (l *loadFlags) options(files []string) (pipeline.LoadOptions, error) {
 func (a *app) screen() *cobra.Command {
 	var r rankFlags
 	var l loadFlags
+	var show showFlags
 	c := &cobra.Command{
 		Use:   "screen FILE...",
 		Short: "Load spreadsheets, estimate, rank, and write the ranked workbook",
@@ -84,33 +86,45 @@ the workbook. Loading the same file again changes nothing.`,
 			if err != nil {
 				return err
 			}
-			return a.runScreen(c, loading, ranking)
+			return a.runScreen(c, loading, ranking, show)
 		},
 	}
 	r.add(c, "ranked.xlsx")
 	l.add(c)
+	show.add(c)
 	a.estimateFlags(c)
 	return c
 }
 
-func (a *app) runScreen(c *cobra.Command, loading pipeline.LoadOptions, ranking pipeline.RankOptions) error {
+func (a *app) runScreen(c *cobra.Command, loading pipeline.LoadOptions, ranking pipeline.RankOptions, show showFlags) error {
 	ctx := c.Context()
 	return a.within(ctx, func(s *pipeline.Session) error {
 		loaded, err := s.Load(ctx, loading)
 		if err != nil {
 			return err
 		}
-		a.tellLoad(loaded)
+		if !show.json {
+			a.tellLoad(loaded, show.all)
+		}
+		if loaded.Nothing() {
+			if show.json {
+				err = writeJSON(a.out, loadJSON(loaded))
+			}
+			return errors.Join(err, errNothing)
+		}
 		ranked, err := s.Rank(ctx, ranking, loaded.Findings)
 		if err != nil {
 			return err
 		}
-		a.tellRank(ranked)
-		a.tellTimes(s.Timings)
-		if loaded.Faulty() {
-			return errSetAside
+		if show.json {
+			j := loadJSON(loaded)
+			j["run"], j["output"], j["buildings"], j["failed"] = ranked.Run.Number, ranked.Out, ranked.Run.Buildings, ranked.Run.Failed
+			err = writeJSON(a.out, j)
+		} else {
+			a.tellRank(ranked)
+			a.tellTimes(s.Timings)
 		}
-		return nil
+		return errors.Join(err, loadStatus(loaded))
 	})
 }
 
@@ -145,8 +159,8 @@ that real ones have, and screens them. Input and output workbooks stay in DIR
 				a.portfolio = "demo"
 			}
 			err = a.runScreen(c, pipeline.LoadOptions{Files: files, Kind: building.Registered},
-				pipeline.RankOptions{Out: filepath.Join(dir, "ranked.xlsx"), Yardstick: rank.Default, Title: demo.Landlord})
-			if err == errSetAside {
+				pipeline.RankOptions{Out: filepath.Join(dir, "ranked.xlsx"), Yardstick: rank.Default, Title: demo.Landlord}, showFlags{})
+			if errors.Is(err, errSetAside) {
 				return nil // the demo's dirt is on purpose
 			}
 			return err

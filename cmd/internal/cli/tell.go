@@ -5,9 +5,12 @@ import (
 	"fmt"
 	"io"
 	"path/filepath"
+	"slices"
 	"strings"
 	"text/tabwriter"
 	"time"
+
+	"github.com/spf13/cobra"
 
 	"kelvinrow/cmd/internal/pipeline"
 	"kelvinrow/estimate/state"
@@ -63,7 +66,7 @@ func amount(kilo float64, unit string) string {
 	return fmt.Sprintf("%.0f k%s", kilo, unit)
 }
 
-func (a *app) tellLoad(o *pipeline.LoadOutcome) {
+func (a *app) tellLoad(o *pipeline.LoadOutcome, all bool) {
 	if a.quiet {
 		return
 	}
@@ -80,14 +83,26 @@ func (a *app) tellLoad(o *pipeline.LoadOutcome) {
 	if len(o.Already) > 0 {
 		fmt.Fprintf(a.out, "             %d files were loaded before and changed nothing\n", len(o.Already))
 	}
-	tellFindings(a.out, o.Findings, 6)
+	tellFindings(a.out, o.Findings, 6, all)
 	for _, f := range o.ToFix {
 		fmt.Fprintf(a.out, "To fix       %s\n", f)
 	}
 }
 
-// tellFindings counts the findings and shows the gravest few.
-func tellFindings(w io.Writer, fs []finding.Finding, show int) {
+// showFlags are the flags that say how findings are shown.
+type showFlags struct{ all, json bool }
+
+func (s *showFlags) add(c *cobra.Command) {
+	c.Flags().BoolVar(&s.all, "all", false, "show every finding, also notes")
+	c.Flags().BoolVar(&s.json, "json", false, "print what was found as JSON, every finding included")
+}
+
+// aboutFiles are the notes that are shown without being asked for: they are
+// about whole files, and few.
+var aboutFiles = []string{finding.FileSkipped, finding.OwnWorkbook, finding.Replaced}
+
+// tellFindings counts the findings and shows the gravest few, or all.
+func tellFindings(w io.Writer, fs []finding.Finding, show int, all bool) {
 	var by [3]int
 	for _, f := range fs {
 		by[f.Severity]++
@@ -97,21 +112,32 @@ func tellFindings(w io.Writer, fs []finding.Finding, show int) {
 	}
 	fmt.Fprintf(w, "Findings     %s errors, %s warnings, %s notes\n",
 		count(by[finding.Error]), count(by[finding.Warning]), count(by[finding.Note]))
-	shown := 0
-	for _, severity := range []finding.Severity{finding.Error, finding.Warning} {
-		kinds := map[string]bool{}
+	if all {
 		for _, f := range fs {
+			fmt.Fprintf(w, "  %s\n", f)
+		}
+		return
+	}
+	shown := 0
+	for _, severity := range []finding.Severity{finding.Error, finding.Warning, finding.Note} {
+		kinds := map[string]bool{}
+		n := 0
+		for _, f := range fs {
+			if severity == finding.Note && !slices.Contains(aboutFiles, f.Check) {
+				continue
+			}
 			// One example of each kind tells more than twenty of the same.
-			if f.Severity != severity || kinds[f.Check+f.File] || shown == show {
+			if f.Severity != severity || kinds[f.Check+f.File] || n == show {
 				continue
 			}
 			kinds[f.Check+f.File] = true
 			fmt.Fprintf(w, "  %s\n", f)
-			shown++
+			n++
 		}
+		shown += n
 	}
-	if rest := by[finding.Error] + by[finding.Warning] - shown; rest > 0 {
-		fmt.Fprintf(w, "  and %s more\n", count(rest))
+	if rest := len(fs) - shown; rest > 0 {
+		fmt.Fprintf(w, "  and %s more: --all shows them, --json gives them to programs\n", count(rest))
 	}
 }
 

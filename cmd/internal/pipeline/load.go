@@ -27,10 +27,13 @@ type LoadOptions struct {
 	MendDir string // where *-to-fix files go; "" is beside each source
 }
 
+// errAlready says that the content of a file is in the store, read in this way.
+var errAlready = errors.New("already loaded")
+
 // LoadOutcome is what a load did.
 type LoadOutcome struct {
 	Reports  []*ingest.Report
-	Already  []string // files whose content was in the store before
+	Already  []string // files whose content was in the store before, read in the same way
 	Findings []finding.Finding
 	ToFix    []string // files written for the owners of rows set aside
 	Rows     int
@@ -48,12 +51,20 @@ func (o *LoadOutcome) Faulty() bool {
 	return o.SetAside > 0
 }
 
-// errAlready stops reading a file whose content is in the store.
-var errAlready = errors.New("already loaded")
+// Nothing reports whether nothing at all in the files could be used, now or before.
+func (o *LoadOutcome) Nothing() bool { return o.Used == 0 && len(o.Already) == 0 }
+
+// loaded is a file as it was read.
+type loaded struct {
+	path   string
+	report *ingest.Report
+	source int64            // 0 where it brought nothing
+	sheets map[string]int64 // numbers in the store by name
+}
 
 // Load reads files into the store. Either all of them are in afterwards or,
-// when the load cannot go on, none; a file that cannot be read is a finding and
-// leaves what the store had of it.
+// when the load cannot go on, none; a file of which nothing can be used is a
+// finding and leaves what the store had of it.
 func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, error) {
 	began := time.Now()
 	defer func() { s.Timings.Read += time.Since(began) }()
@@ -61,7 +72,7 @@ func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, erro
 	if err != nil {
 		return nil, err
 	}
-	files, err := ingest.Expand(opt.Files)
+	files, skipped, err := ingest.Expand(opt.Files)
 	if err != nil {
 		return nil, err
 	}
@@ -70,51 +81,33 @@ func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, erro
 		return nil, err
 	}
 	defer l.Rollback()
-	out := &LoadOutcome{}
-	type faulty struct {
-		path   string
-		report *ingest.Report
-	}
-	var toMend []faulty
+	out := &LoadOutcome{Findings: skipped}
+	var all []loaded
+	var known []string
 	s.Progress.Stage("reading", len(files))
-	for _, path := range files {
-		sink := &sink{ctx: ctx, load: l, path: path, progress: s.Progress}
-		report, err := ingest.ReadFile(ctx, path, read, sink)
+	for i, name := range ingest.Names(files) {
+		read.Name = name
+		f, err := s.readOne(ctx, l, files[i], read)
 		if errors.Is(err, errAlready) {
-			out.Already = append(out.Already, path)
-			s.Progress.Add(1)
-			continue
-		}
-		if err != nil {
-			return nil, fmt.Errorf("load %s: %w", path, err)
-		}
-		if sink.begun {
-			if err := l.Findings(ctx, report.Findings); err != nil {
-				return nil, fmt.Errorf("load %s: %w", path, err)
-			}
-		}
-		out.Reports = append(out.Reports, report)
-		out.Findings = append(out.Findings, report.Findings...)
-		out.Rows += report.Rows
-		out.Used += report.Used
-		out.SetAside += report.SetAside
-		if report.SetAside > 0 {
-			toMend = append(toMend, faulty{path, report})
+			out.Already = append(out.Already, files[i])
+			known = append(known, name)
+		} else if err != nil {
+			return nil, fmt.Errorf("load %s: %w", files[i], err)
+		} else {
+			all = append(all, f)
+			out.Reports = append(out.Reports, f.report)
 		}
 		s.Progress.Add(1)
 	}
-	if _, err := l.Commit(ctx); err != nil {
+	out.Findings = append(out.Findings, ingest.UnusedMapping(read.Mapping, out.Reports, known)...)
+	if err := s.finish(ctx, l, all, out); err != nil {
 		return nil, err
 	}
-	for _, f := range toMend {
-		dir := opt.MendDir
-		if dir == "" {
-			dir = filepath.Dir(f.path)
+	for _, f := range all {
+		if f.report.SetAside == 0 {
+			continue
 		}
-		path, err := mend.Write(ctx, f.path, f.report, dir)
-		if errors.Is(err, fs.ErrPermission) {
-			path, err = mend.Write(ctx, f.path, f.report, ".") // the sources may be on a read-only share
-		}
+		path, err := s.toFix(ctx, f, opt.MendDir)
 		if err != nil {
 			return nil, fmt.Errorf("the data is loaded, but not its rows to fix: %w", err)
 		}
@@ -127,13 +120,127 @@ func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, erro
 	return out, nil
 }
 
+// readOne reads one file into the load; errAlready where there is nothing new.
+func (s *Session) readOne(ctx context.Context, l *store.Load, path string, read ingest.Options) (loaded, error) {
+	f := loaded{path: path, sheets: map[string]int64{}}
+	sum, size, err := contentHash(path)
+	hashed := err == nil // where not, reading will say why
+	reading := ingest.Reading(read, read.Name)
+	if hashed {
+		already, err := l.Already(ctx, sum, reading)
+		if err != nil {
+			return f, err
+		}
+		if already {
+			return f, errAlready
+		}
+	}
+	source := store.File{Name: read.Name, SHA256: sum, Bytes: size, Reading: reading, Adds: ingest.Mended(path)}
+	if source.Path, err = filepath.Abs(path); err != nil {
+		return f, err
+	}
+	sink := &sink{ctx: ctx, load: l, file: source, progress: s.Progress, loaded: &f}
+	if f.report, err = ingest.ReadFile(ctx, path, read, sink); err != nil {
+		return f, err
+	}
+	if f.source == 0 {
+		return f, nil
+	}
+	if f.report.SHA256 != sum {
+		return f, errors.New("the file changed while it was read; load it again")
+	}
+	for _, old := range sink.replaced {
+		w, err := l.Withdrawn(ctx, old.Number)
+		if err != nil {
+			return f, err
+		}
+		f.report.Findings = append(f.report.Findings, replaced(old, source, w))
+	}
+	return f, nil
+}
+
+// replaced says what taking an earlier version's place changed.
+func replaced(old store.Source, now store.File, w store.Withdrawal) finding.Finding {
+	f := finding.Finding{Severity: finding.Note, Check: finding.Replaced, File: now.Name}
+	of := fmt.Sprintf("%s, dated %s and loaded on %s", old.File, old.FileDate, old.Loaded.Format("2006-01-02"))
+	switch elsewhere := old.Path != "" && old.Path != now.Path; {
+	case old.Reading != now.Reading && old.SameContent(now.SHA256):
+		f.Text = fmt.Sprintf("the same content was loaded before, read as %s; now read as %s, it takes the place of that", orUnknown(old.Reading), now.Reading)
+	case elsewhere:
+		f.Severity = finding.Warning
+		f.Text = fmt.Sprintf("takes the place of %s from %s", of, filepath.Dir(old.Path))
+		f.Fix = "if they are different files and not versions of one, take this one back (load --undo) and load both in one command"
+	default:
+		f.Text = "takes the place of " + of
+	}
+	if w.BuildingsGone > 0 || w.ValuesGone > 0 {
+		f.Severity = finding.Warning
+	}
+	f.Text += fmt.Sprintf(": of its %d buildings %d are withdrawn, of its %d values %d are withdrawn and %d change", w.Buildings, w.BuildingsGone, w.Values, w.ValuesGone, w.ValuesChanged)
+	return f
+}
+
+func orUnknown(reading string) string {
+	if reading == "" {
+		return "it was then"
+	}
+	return reading
+}
+
+// finish adds what shows only when all files are in, stores the findings and
+// commits, or leaves the store alone where nothing came in.
+func (s *Session) finish(ctx context.Context, l *store.Load, all []loaded, out *LoadOutcome) (err error) {
+	brought := false
+	for _, f := range all {
+		r := f.report
+		if f.source != 0 {
+			brought = true
+			if r.Findings, err = unmissed(ctx, l, f.sheets, r.Findings); err != nil {
+				return err
+			}
+			if err := l.Findings(ctx, f.source, r.Findings); err != nil {
+				return fmt.Errorf("load %s: %w", f.path, err)
+			}
+		}
+		out.Findings = append(out.Findings, r.Findings...)
+		out.Rows += r.Rows
+		out.Used += r.Used
+		out.SetAside += r.SetAside
+	}
+	if !brought {
+		l.Rollback()
+		return nil
+	}
+	about, err := watched(ctx, l)
+	if err != nil {
+		return fmt.Errorf("compare with what the store has: %w", err)
+	}
+	out.Findings = append(out.Findings, about...)
+	_, err = l.Commit(ctx)
+	return err
+}
+
+// toFix writes the rows set aside beside their source, or where the command runs.
+func (s *Session) toFix(ctx context.Context, f loaded, dir string) (string, error) {
+	if dir == "" {
+		dir = filepath.Dir(f.path)
+	}
+	path, err := mend.Write(ctx, f.path, f.report, dir)
+	if errors.Is(err, fs.ErrPermission) {
+		path, err = mend.Write(ctx, f.path, f.report, ".") // the sources may be on a read-only share
+	}
+	return path, err
+}
+
 func (s *Session) readOptions(opt LoadOptions) (ingest.Options, error) {
 	mapping, err := ReadMapping(opt.Columns)
 	if err != nil {
 		return ingest.Options{}, err
 	}
-	return ingest.Options{Kind: opt.Kind, Mapping: mapping, Today: time.Now().Format("2006-01-02")}, nil
+	return ingest.Options{Kind: opt.Kind, Mapping: mapping, Today: today()}, nil
 }
+
+func today() string { return time.Now().Format("2006-01-02") }
 
 // ReadMapping reads a column mapping file; "" is none.
 func ReadMapping(path string) (*header.Mapping, error) {
@@ -146,6 +253,10 @@ func ReadMapping(path string) (*header.Mapping, error) {
 	}
 	defer f.Close()
 	m, err := header.ParseMapping(f)
+	if err == nil {
+		m.Name = filepath.Base(path)
+		err = ingest.CheckMapping(m, today())
+	}
 	if err != nil {
 		return nil, fmt.Errorf("%s: %w", path, err)
 	}
@@ -153,39 +264,49 @@ func ReadMapping(path string) (*header.Mapping, error) {
 }
 
 // sink passes what is read on to the store. The source is registered only when
-// a first sheet was recognised, so that a broken file replaces nothing.
+// there is a row to store, so that a broken or empty file replaces nothing.
 type sink struct {
 	ctx      context.Context
 	load     *store.Load
-	path     string
+	file     store.File
 	progress interface{ Rows(int) }
-	begun    bool
+	loaded   *loaded
+	replaced []store.Source
 	rows     int
 }
 
-func (s *sink) Sheet(sh *building.Sheet) error {
-	if !s.begun {
-		sum, size, err := contentHash(s.path)
-		if err != nil {
+func (s *sink) Sheet(*building.Sheet) error { return nil }
+
+func (s *sink) Record(r *building.Record) error {
+	if r.Sheet.ID == 0 {
+		if err := s.register(r.Sheet); err != nil {
 			return err
 		}
-		already, err := s.load.Source(s.ctx, filepath.Base(s.path), sum, sh.FileDate, size)
+	}
+	if s.rows++; s.rows%1000 == 0 {
+		s.progress.Rows(1000)
+	}
+	return s.load.Add(s.ctx, r)
+}
+
+// register registers a sheet, and the file before its first.
+func (s *sink) register(sh *building.Sheet) error {
+	if s.loaded.source == 0 {
+		s.file.Date = sh.FileDate
+		already, replaced, err := s.load.Source(s.ctx, s.file)
 		if err != nil {
 			return err
 		}
 		if already {
 			return errAlready
 		}
-		s.begun = true
+		s.replaced, s.loaded.source = replaced, s.load.Last()
 	}
-	return s.load.Sheet(s.ctx, sh)
-}
-
-func (s *sink) Record(r *building.Record) error {
-	if s.rows++; s.rows%1000 == 0 {
-		s.progress.Rows(1000)
+	if err := s.load.Sheet(s.ctx, sh); err != nil {
+		return err
 	}
-	return s.load.Add(s.ctx, r)
+	s.loaded.sheets[sh.Name] = sh.ID
+	return nil
 }
 
 func contentHash(path string) (sum [32]byte, size int64, err error) {

@@ -57,7 +57,8 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 	if run.Files, err = s.fileNames(ctx); err != nil {
 		return nil, err
 	}
-	buildings, inputs, err := s.estimate(ctx, basis)
+	about := newWatch()
+	buildings, inputs, err := s.estimate(ctx, basis, about)
 	if err != nil {
 		return nil, err
 	}
@@ -82,7 +83,7 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 	}
 
 	in := &workbook.Input{
-		Run: run, Buildings: buildings, Findings: union(stored, findings), Set: basis.Set,
+		Run: run, Buildings: buildings, Findings: union(append(stored, about.list...), findings), Set: basis.Set,
 		Climate: basis.Climate, Top: opt.Top, Yardstick: opt.Yardstick, Title: opt.Title,
 	}
 	var file *staged
@@ -107,8 +108,9 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 	return &RankOutcome{Run: run, Buildings: buildings, Summary: summary, Basis: basis, Out: opt.Out}, nil
 }
 
-// estimate evaluates all buildings, and hashes what they are made from.
-func (s *Session) estimate(ctx context.Context, basis *estimate.Basis) (buildings []result.Building, inputs string, err error) {
+// estimate evaluates all buildings, hashes what they are made from, and looks
+// out for what should be said about them.
+func (s *Session) estimate(ctx context.Context, basis *estimate.Basis, about *watch) (buildings []result.Building, inputs string, err error) {
 	began := time.Now()
 	n, err := s.Store.Count(ctx, s.Portfolio)
 	if err != nil {
@@ -117,7 +119,8 @@ func (s *Session) estimate(ctx context.Context, basis *estimate.Basis) (building
 	s.Progress.Stage("estimating", n)
 	h := sha256.New()
 	source := func(yield func(*building.Building) error) error {
-		return s.Store.Buildings(ctx, s.Portfolio, func(b *building.Building) error {
+		return s.Store.Groups(ctx, s.Portfolio, func(b *building.Building, records []building.Record) error {
+			about.look(b, records)
 			b.WriteHash(h)
 			return yield(b)
 		})
