@@ -26,6 +26,16 @@ func (s Severity) String() string { return severityWords[s] }
 // MarshalText writes the severity as its word.
 func (s Severity) MarshalText() ([]byte, error) { return []byte(severityWords[s]), nil }
 
+// UnmarshalText reads a severity from its word.
+func (s *Severity) UnmarshalText(word []byte) error {
+	v, ok := SeverityByWord(string(word))
+	if !ok {
+		return fmt.Errorf("%q is no severity", word)
+	}
+	*s = v
+	return nil
+}
+
 // SeverityByWord finds a severity by its word.
 func SeverityByWord(w string) (Severity, bool) {
 	i := slices.Index(severityWords[:], w)
