@@ -219,3 +219,19 @@ func BenchmarkEstimate(b *testing.B) {
 		})
 	}
 }
+
+// A supply fan moves what an extract fan of its size moves, the other way: the
+// pressure it makes has the other sign, the flows are the same (quadrature).
+func TestSupplyOnlyIsExtractTurnedRound(t *testing.T) {
+	b := testBasis(t)
+	flows := func(kind string, f building.Field) result.Building {
+		return b.Evaluate(testBuilding("x", values{
+			building.UseField: "apartment block", building.YearBuilt: 1970, building.FloorArea: 800,
+			building.VentilationField: kind, f: 900.0,
+		}))
+	}
+	supply, extract := flows("supply fan", building.SupplyAirflow), flows("extract fan", building.ExtractAirflow)
+	if supply.Ventilation != "supply fan" || supply.NeedKWh != extract.NeedKWh || supply.FansKWh != extract.FansKWh || supply.AirChangesPerH != extract.AirChangesPerH {
+		t.Errorf("supply %g kWh, %g 1/h; extract %g kWh, %g 1/h", supply.NeedKWh, supply.AirChangesPerH, extract.NeedKWh, extract.AirChangesPerH)
+	}
+}

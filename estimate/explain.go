@@ -192,8 +192,11 @@ func elementDoc(e *state.Element) ElementDoc {
 		d.RsiM2KW, d.RseM2KW = &e.RsiM2KW, &e.RseM2KW
 		d.Layers = layerDocs(e)
 		if !e.OnGround {
-			if t, err := fabric.Evaluate(e.RsiM2KW, e.Layers, e.RseM2KW); err == nil && t.UpperM2KW != t.LowerM2KW {
-				d.UpperM2KW, d.LowerM2KW, d.RelativeErr = &t.UpperM2KW, &t.LowerM2KW, &t.RelativeError
+			if t, err := fabric.Evaluate(e.RsiM2KW, e.Layers, e.RseM2KW); err == nil {
+				if t.UpperM2KW != t.LowerM2KW {
+					d.UpperM2KW, d.LowerM2KW, d.RelativeErr = &t.UpperM2KW, &t.LowerM2KW, &t.RelativeError
+				}
+				d.Correction = present(t.CorrectionWM2K)
 			}
 		}
 		if e.Kind == state.Wall && !e.OnGround {
@@ -228,6 +231,10 @@ func layerDocs(e *state.Element) []LayerDoc {
 			Name: l.Name, ThicknessM: present(l.ThicknessM), ConductivityWMK: present(l.ConductivityWMK),
 			ResistanceM2KW: effective[i],
 			BridgeShare:    present(l.BridgeShare), BridgeConductivityWMK: present(l.BridgeConductivityWMK),
+			Gaps: l.Gaps.String(), FixingsPerM2: present(l.Fixings.PerM2),
+		}
+		if l.Fixings.PerM2 > 0 {
+			docs[i].FixingM2, docs[i].FixingWMK = present(l.Fixings.SectionM2), present(l.Fixings.ConductivityWMK)
 		}
 	}
 	return docs

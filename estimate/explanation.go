@@ -143,6 +143,7 @@ type ElementDoc struct {
 	UpperM2KW   *float64   `json:"resistance_upper_m2k_w,omitempty"` // layers of two materials
 	LowerM2KW   *float64   `json:"resistance_lower_m2k_w,omitempty"`
 	RelativeErr *float64   `json:"relative_error,omitempty"`
+	Correction  *float64   `json:"correction_w_m2k,omitempty"` // for air gaps and fixings; within u_w_m2k and the layers' resistances
 	Ground      *GroundDoc `json:"ground,omitempty"`
 	Orientation string     `json:"orientation,omitempty"`
 	G           *float64   `json:"g,omitempty"`
@@ -152,7 +153,7 @@ type ElementDoc struct {
 }
 
 // LayerDoc is one layer. ResistanceM2KW is such that Rsi, the layers and Rse add
-// up to 1/U also where a layer has two materials.
+// up to 1/U also where a layer has two materials, gaps or fixings.
 type LayerDoc struct {
 	Name                  string   `json:"name"`
 	ThicknessM            *float64 `json:"thickness_m,omitempty"`
@@ -160,6 +161,10 @@ type LayerDoc struct {
 	ResistanceM2KW        float64  `json:"resistance_m2k_w"`
 	BridgeShare           *float64 `json:"bridge_share,omitempty"`
 	BridgeConductivityWMK *float64 `json:"bridge_conductivity_w_mk,omitempty"`
+	Gaps                  string   `json:"air_gaps,omitempty"`
+	FixingsPerM2          *float64 `json:"fixings_per_m2,omitempty"`
+	FixingM2              *float64 `json:"fixing_section_m2,omitempty"`
+	FixingWMK             *float64 `json:"fixing_conductivity_w_mk,omitempty"`
 }
 
 // GroundDoc is what the ground model used.

@@ -422,6 +422,8 @@ func (r *reader) flows(v building.Ventilation, area float64, year int) (supply, 
 	switch v {
 	case building.ExtractFan, building.DemandControlled:
 		return 0, get(building.ExtractAirflow, archetype.ExtractRate)
+	case building.SupplyFan:
+		return get(building.SupplyAirflow, archetype.SupplyRate), 0
 	case building.Balanced, building.BalancedRecovery:
 		switch s, e := r.has(building.SupplyAirflow), r.has(building.ExtractAirflow); {
 		case s && !e:

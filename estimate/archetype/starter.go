@@ -8,6 +8,7 @@ import (
 	"io"
 	"io/fs"
 	"math"
+	"slices"
 	"strconv"
 	"strings"
 	"sync"
@@ -207,6 +208,13 @@ func readLayer(s *Set, r *row) {
 	}
 	if bridge := r.text("bridge_material"); bridge != "" {
 		l.BridgeConductivityWMK = material("bridge_material", bridge)
+	}
+	l.Fixings = fabric.Fixings{PerM2: r.number("fixings_per_m2"), SectionM2: r.number("fixing_mm2") / 1e6, ConductivityWMK: r.number("fixing_w_mk")}
+	gaps := r.text("gaps")
+	if i := slices.Index(fabric.GapWords[:], gaps); i >= 0 {
+		l.Gaps = fabric.Gaps(i)
+	} else {
+		r.problem("gaps", "%q is neither empty nor one of %v", gaps, fabric.GapWords[1:])
 	}
 	b.Layers = append(b.Layers, l)
 }

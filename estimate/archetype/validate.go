@@ -137,6 +137,15 @@ func (v *validator) buildups() {
 				v.within(row, "bridge conductivity", l.BridgeConductivityWMK, 0.001, 500)
 				v.within(row, "thickness of a bridged layer", l.ThicknessM, 0.0001, 5)
 			}
+			if l.Gaps > fabric.GapsOpen {
+				v.add("%s: unknown air gaps", row)
+			}
+			if f := l.Fixings; f != (fabric.Fixings{}) {
+				v.within(row, "fixings per m2", f.PerM2, 0.01, 100)
+				v.within(row, "section of a fixing in m2", f.SectionM2, 1e-7, 1e-3)
+				v.within(row, "conductivity of a fixing", f.ConductivityWMK, 0.01, 500)
+				v.within(row, "thickness of a layer with fixings", l.ThicknessM, 0.001, 5)
+			}
 		}
 		v.named(row, b.Source)
 	}

@@ -66,6 +66,7 @@ const (
 	Balanced
 	BalancedRecovery
 	DemandControlled
+	SupplyFan
 
 	NumVentilations = int(iota)
 )
@@ -73,7 +74,7 @@ const (
 // VentilationWords are the canonical words, indexed by Ventilation.
 var VentilationWords = [NumVentilations]string{
 	"unknown", "natural", "passive stack", "extract fan", "balanced",
-	"balanced with heat recovery", "demand-controlled extract",
+	"balanced with heat recovery", "demand-controlled extract", "supply fan",
 }
 
 func (v Ventilation) String() string { return VentilationWords[v] }

@@ -11,6 +11,11 @@ const (
 	GapsOpen                 // bridging it, with circulation on the warm side
 )
 
+// GapWords are the words of Gaps, in their order.
+var GapWords = [...]string{"", "bridging", "open"}
+
+func (g Gaps) String() string { return GapWords[min(g, GapsOpen)] }
+
 // AirGapCorrection is dU_g = dU” (R_1/R_tot)^2 in W/(m2K), dU” 0, 0.01 or 0.04,
 // R_1 the layer with the gaps. Source: ISO 6946:2017, annex F.2.
 func AirGapCorrection(g Gaps, layerM2KW, totalM2KW float64) float64 {

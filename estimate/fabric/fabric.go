@@ -125,8 +125,9 @@ func (l Layer) bridge() (float64, error) {
 
 // Transmittance is the result of Evaluate.
 type Transmittance struct {
-	UWM2K          float64
-	ResistanceM2KW float64 // R_tot = (R' + R'')/2
+	UWM2K          float64 // 1/R_tot + dU
+	ResistanceM2KW float64 // R_tot = (R' + R'')/2, before corrections
+	CorrectionWM2K float64 // dU for air gaps and fixings
 	UpperM2KW      float64 // R', parallel sections from surface to surface
 	LowerM2KW      float64 // R'', layer by layer
 	RelativeError  float64 // (R' - R'')/(2 R_tot), largest possible
@@ -137,7 +138,9 @@ type Transmittance struct {
 var ErrUneven = errors.New("upper and lower limit of the resistance differ by more than a factor 1.5: the combined method does not hold")
 
 // Evaluate returns the transmittance of layers between surface resistances
-// rsi and rse in m2K/W: U = 1/R_tot. With layers of two materials R_tot is the
+// rsi and rse in m2K/W: U = 1/R_tot + dU, dU for the air gaps and fixings that the
+// layers name (the standard lets it be left out below 3 % of U; it is kept, so that
+// there is no step). With layers of two materials R_tot is the
 // mean of the upper limit R' = 1/sum(f_m/R_m) over all straight sections m and
 // the lower limit R” = rsi + sum(1/sum(f_q/R_q)) + rse. Area shares of different
 // layers are taken as independent of each other.
@@ -180,7 +183,9 @@ func Evaluate(rsi float64, layers []Layer, rse float64) (Transmittance, error) {
 		if !(plain > 0) {
 			return Transmittance{}, errors.New("an element without any resistance")
 		}
-		return Transmittance{UWM2K: 1 / plain, ResistanceM2KW: plain, UpperM2KW: plain, LowerM2KW: plain}, nil
+		t := Transmittance{ResistanceM2KW: plain, UpperM2KW: plain, LowerM2KW: plain}
+		t.correct(layers)
+		return t, nil
 	}
 	u := 0.0
 	for _, s := range sections {
@@ -189,22 +194,32 @@ func Evaluate(rsi float64, layers []Layer, rse float64) (Transmittance, error) {
 	upper := 1 / u
 	total := (upper + lower) / 2
 	t := Transmittance{
-		UWM2K: 1 / total, ResistanceM2KW: total, UpperM2KW: upper, LowerM2KW: lower,
+		ResistanceM2KW: total, UpperM2KW: upper, LowerM2KW: lower,
 		RelativeError: (upper - lower) / (2 * total),
 	}
+	t.correct(layers)
 	if upper/lower > 1.5 {
 		return t, ErrUneven
 	}
 	return t, nil
 }
 
+// correct adds the corrections of the layers, which are known to be sound.
+func (t *Transmittance) correct(layers []Layer) {
+	for _, l := range layers {
+		r, _ := l.Resistance()
+		t.CorrectionWM2K += l.correction(r, t.ResistanceM2KW)
+	}
+	t.UWM2K = 1/t.ResistanceM2KW + t.CorrectionWM2K
+}
+
 // section is one straight path through the element.
 type section struct{ share, resistance float64 }
 
 // EffectiveResistances returns one resistance per layer in m2K/W such that rsi,
-// they and rse add up to the total of Evaluate. A layer of one material has its
-// own; layers of two materials share what remains in proportion to their
-// resistances in the lower limit.
+// they and rse add up to 1/U of Evaluate. A layer of one material has its own;
+// layers of two materials share what remains in proportion to their resistances in
+// the lower limit; layers with gaps or fixings have what those leave of them.
 func EffectiveResistances(rsi float64, layers []Layer, rse float64) ([]float64, error) {
 	t, err := Evaluate(rsi, layers, rse)
 	if err != nil && !errors.Is(err, ErrUneven) {
@@ -225,6 +240,13 @@ func EffectiveResistances(rsi float64, layers []Layer, rse float64) ([]float64, 
 	for i, l := range layers {
 		if l.bridged() {
 			out[i] *= rest / bridged
+		}
+	}
+	if t.CorrectionWM2K > 0 {
+		lost := t.ResistanceM2KW - 1/t.UWM2K
+		for i, l := range layers {
+			r, _ := l.Resistance()
+			out[i] -= lost * l.correction(r, t.ResistanceM2KW) / t.CorrectionWM2K
 		}
 	}
 	return out, nil

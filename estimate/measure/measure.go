@@ -117,8 +117,9 @@ func (m *Measure) Cost(quantity float64) float64 {
 }
 
 // Companion gives a state the mechanical outdoor air it lacks: extract fans
-// controlled by demand, sized so that fans and airing alone meet the least
-// airflow; infiltration comes on top. It returns the flow added, m3/h.
+// controlled by demand, or more of the supply it has, sized so that fans and airing
+// alone meet the least airflow; infiltration comes on top. It returns the flow added,
+// m3/h.
 func Companion(s *state.State, t *archetype.Measure) float64 {
 	a := &s.Air
 	missing := a.MinimumM3H - a.AiringM3H - min(a.SupplyM3H, a.ExtractM3H)
@@ -128,6 +129,8 @@ func Companion(s *state.State, t *archetype.Measure) float64 {
 		case building.Balanced, building.BalancedRecovery:
 			a.SupplyM3H += added
 			a.ExtractM3H += added
+		case building.SupplyFan:
+			a.SupplyM3H += added
 		default:
 			a.ExtractM3H = a.SupplyM3H + missing
 			a.Ventilation = building.DemandControlled

@@ -192,4 +192,9 @@ func TestCompanionGivesTheAirThatIsMissing(t *testing.T) {
 	if s.Air.SupplyM3H != s.Air.ExtractM3H || math.Abs(s.Air.SupplyM3H-151) > 1e-9 {
 		t.Errorf("balanced ventilation becomes %g and %g m3/h", s.Air.SupplyM3H, s.Air.ExtractM3H)
 	}
+	s, _ = house()
+	s.Air.Ventilation, s.Air.SupplyM3H, s.Air.AiringM3H = building.SupplyFan, 80, 20
+	if added := Companion(s, terms); math.Abs(added-51) > 1e-9 || math.Abs(s.Air.SupplyM3H-131) > 1e-9 || s.Air.ExtractM3H != 0 {
+		t.Errorf("a supply fan of 80 m3/h becomes %g and %g m3/h, %g added", s.Air.SupplyM3H, s.Air.ExtractM3H, added)
+	}
 }

@@ -29,7 +29,7 @@ func (e *Element) Recompute() error {
 		if err != nil && !errors.Is(err, fabric.ErrUneven) {
 			return fmt.Errorf("%s: %w", e.Name, err)
 		}
-		layers = t.ResistanceM2KW - 2*0.17
+		layers = 1/t.UWM2K - 2*0.17
 	}
 	var err error
 	switch {
@@ -47,7 +47,7 @@ func (e *Element) Recompute() error {
 		}
 		e.UWM2K, err = ground.HeatedBasement{
 			Slab: e.Ground, DepthM: e.BasementDepthM,
-			WallResistanceM2KW: t.ResistanceM2KW - e.RsiM2KW - e.RseM2KW,
+			WallResistanceM2KW: 1/t.UWM2K - e.RsiM2KW - e.RseM2KW,
 		}.WallTransmittance()
 	case e.VoidHeightM > 0:
 		e.Ground.FloorResistanceM2KW = 0 // the base of the void is bare

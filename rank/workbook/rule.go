@@ -129,6 +129,10 @@ func (b *book) addBuildups() error {
 	number(layer, "Declared resistance (m²K/W)", 13, three, func(x *layerRow) float64 { return x.layer.ResistanceM2KW })
 	number(layer, "Second material (share)", 11, percent, func(x *layerRow) float64 { return x.layer.BridgeShare })
 	number(layer, "its conductivity (W/(mK))", 13, three, func(x *layerRow) float64 { return x.layer.BridgeConductivityWMK })
+	text(layer, "Air gaps", 10, func(x *layerRow) string { return x.layer.Gaps.String() })
+	number(layer, "Fixings (1/m2)", 9, general, func(x *layerRow) float64 { return x.layer.Fixings.PerM2 })
+	number(layer, "of section (mm2)", 9, general, func(x *layerRow) float64 { return 1e6 * x.layer.Fixings.SectionM2 })
+	number(layer, "and conductivity (W/(mK))", 13, general, func(x *layerRow) float64 { return x.layer.Fixings.ConductivityWMK })
 	number(whole, "U (W/(m²K))", 11, two, func(x *layerRow) float64 {
 		if x.n > 1 {
 			return 0
