@@ -254,3 +254,59 @@ func TestDateOfTheFileIsSaidToCount(t *testing.T) {
 		}
 	}
 }
+
+func TestResultsTakenOutOfAWorkbookAreNotRead(t *testing.T) {
+	r, k := load(t, csvFile(t, "Building,Use,Floor area (m²),Year built,Ventilation,Default (share),Measure that does most\nB1,school,900,1950,natural,0.6,Heat pump\n"), Options{})
+	if len(k.records) > 0 || !r.Own || !strings.Contains(r.Findings[0].Text, "results of this program") {
+		t.Errorf("%d records, %v", len(k.records), r.Findings)
+	}
+}
+
+func TestHeatingAndCarrierTellEachOther(t *testing.T) {
+	const head = "id,use,floor area (m2),year built,ventilation,heating system"
+	rows := func(words ...string) string {
+		s := ""
+		for i, w := range words {
+			s += "\nB" + string(rune('0'+i)) + ",school,900,1950,natural," + w
+		}
+		return s
+	}
+	r, k := load(t, csvFile(t, head+rows("Gas", "Ölheizung", "pompe à chaleur", "Fernwärme", "Zentralheizung", "Holzpellets", "gibberish")), Options{})
+	for i, want := range [][2]string{{"", "gas"}, {"boiler", "oil"}, {"heat pump", "electricity"}, {"district heating", "district heat"}, {"boiler", ""}, {"", "wood"}, {"", ""}} {
+		id := "B" + string(rune('0'+i))
+		system, _ := k.get(id, building.HeatingSystem)
+		carrier, _ := k.get(id, building.CarrierField)
+		if system.Text != want[0] || carrier.Text != want[1] {
+			t.Errorf("%s: %q by %q, want %q", id, system.Text, carrier.Text, want)
+		}
+	}
+	if got := checks(r, finding.Warning); got != "unknown-word@8F" {
+		t.Errorf("warnings %s: %v", got, r.Findings)
+	}
+	if got := k.sheets[0].Columns[building.CarrierField]; got != "F" {
+		t.Errorf("the carrier comes from column %q", got)
+	}
+	// The column of the carrier counts before what the heating system tells.
+	_, k = load(t, csvFile(t, head+",energy carrier"+rows("boiler,Gas-Brennwertkessel", "gas boiler,oil", "gas boiler,", ",Fernwärme", ",Strom")), Options{})
+	for i, want := range [][2]string{{"boiler", "gas"}, {"boiler", "oil"}, {"boiler", "gas"}, {"district heating", "district heat"}, {"", "electricity"}} {
+		id := "B" + string(rune('0'+i))
+		system, _ := k.get(id, building.HeatingSystem)
+		carrier, _ := k.get(id, building.CarrierField)
+		if system.Text != want[0] || carrier.Text != want[1] {
+			t.Errorf("%s: %q by %q, want %q", id, system.Text, carrier.Text, want)
+		}
+	}
+}
+
+func TestStoreysAsPlannersWriteThem(t *testing.T) {
+	r, k := load(t, csvFile(t, "id,use,floor area (m2),year built,ventilation,storeys\nA,school,900,1950,natural,R+5\nB,school,900,1950,natural,3-4\nC,school,900,1950,natural,2 + DG\nD,school,900,1950,natural,II\nE,school,900,1950,natural,some\n"), Options{})
+	for id, want := range map[string]float64{"A": 6, "B": 3.5, "C": 2, "D": 2} {
+		if v, _ := k.get(id, building.Storeys); v.Number != want {
+			t.Errorf("%s has %v storeys, want %v", id, v.Number, want)
+		}
+	}
+	notes := checks(r, finding.Note)
+	if !strings.Contains(notes, "storeys-range@3F") || !strings.Contains(notes, "storeys-attic@4F") || checks(r, finding.Warning) != "not-a-number@6F" {
+		t.Errorf("%v", r.Findings)
+	}
+}

@@ -98,7 +98,7 @@ func TestFaultsOfRowsAndSheets(t *testing.T) {
 	}{
 		{"Sound", "id,floor area (m2),year built,use,ventilation\n1,100,1950,school,natural\n", "", "", 1, 1, 0},
 		{"NoHeader", "1,100,1950\n2,200,1960\n", "no-table@0", "", 0, 0, 0},
-		{"NoID", "address,floor area,year built,use\nA 1,100,1950,school\n", "missing-id@0A,B,C,D", "", 0, 0, 0},
+		{"NoID", "address,floor area,year built,use\nA 1,100,1950,school\n", "missing-id@0A", "", 0, 0, 0},
 		{"AmbiguousSize", "id,Wohnfläche,Nutzfläche\n1,100,120\n", "ambiguous-column@0B,C", "", 0, 0, 0},
 		{"RowWithoutID", "id,floor area (m2),use,ventilation\n,100,school,natural\n2,100,school,natural\n", "missing-id@2A", "", 2, 1, 1},
 		{"NegativeArea", "id,floor area (m2),use,ventilation\n1,-100,school,natural\n", "negative-area@2B", "", 1, 0, 1},

@@ -51,3 +51,18 @@ func properties(path string) (creator, description string) {
 	}
 	return core.Creator, core.Description
 }
+
+// ownHeaders head columns of results of this program and of no register.
+var ownHeaders = []string{"Measure that does most", "Inputs by default", "Surveyed (share)", "Default (share)", "Delivered for heating and hot water (kWh/a)"}
+
+// ownResults reports whether a table was taken out of a ranked workbook, as a
+// sheet of another book or as text.
+func (t *table) ownResults() bool {
+	n := 0
+	for i := range t.layout.Columns {
+		if slices.Contains(ownHeaders, t.layout.Columns[i].Header) {
+			n++
+		}
+	}
+	return n > 1
+}

@@ -79,7 +79,7 @@ func ReadFile(ctx context.Context, path string, opt Options, sink Sink) (*Report
 		r.SetAside += t.out.SetAside
 		read = read || t.out.Skipped == ""
 	}
-	if !read && !anyError(r.Findings) {
+	if !read && !r.Own && !anyError(r.Findings) {
 		r.Findings = append(r.Findings, finding.Finding{Severity: finding.Error, Check: "no-table", File: r.File,
 			Text: "no table of buildings is recognised in the file", Fix: "give the table a header row with known names, or say which column is what in a column file"})
 	}

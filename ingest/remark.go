@@ -35,6 +35,9 @@ func (t *table) remarks() {
 			case f == building.MeteredHeat && (c.Sense == "gas" || c.Sense == "oil"):
 				remark(finding.Note, "fuel-as-heat", f, c, fmt.Sprintf("%q is taken as metered heat, cooking and hot water included", c.Header), "")
 			}
+			if f == building.MeteredHeat && c.Sense == "energy" {
+				remark(finding.Note, "energy-as-heat", f, c, fmt.Sprintf("%q is taken as metered heat, electricity perhaps included", c.Header), "give the heat alone if it is metered, or say metered_heat = none in a column file")
+			}
 			if c.Unit.Note != "" {
 				remark(finding.Note, "unit-converted", f, c, c.Unit.Note, "")
 			}

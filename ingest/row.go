@@ -194,6 +194,7 @@ func (r *rowReader) read(in *sheet.Row, id string, surveyed bool) bool {
 		r.set(v, nil)
 	}
 	r.inferAttachment(in)
+	r.inferHeating(in)
 	if r.house != nil && r.values[building.Street] != nil {
 		if h := in.Cell(r.house.Index); !h.Blank() && !cell.IsAbsent(h.Text) {
 			r.values[building.Street].Text += " " + idText(h)
@@ -209,6 +210,37 @@ func (r *rowReader) read(in *sheet.Row, id string, surveyed bool) bool {
 		return !none
 	}
 	return true
+}
+
+// inferHeating takes from "gas boiler" the carrier, and from "district heat" the
+// heating system, where the row does not give them.
+func (r *rowReader) inferHeating(in *sheet.Row) {
+	from := func(given, wanted building.Field, tells func(string) (string, bool)) {
+		if r.values[wanted] != nil {
+			return
+		}
+		for _, c := range r.plan.Columns(given.Key()) {
+			raw := in.Cell(c.Index)
+			if raw.Blank() {
+				continue
+			}
+			if w, ok := tells(raw.Text); ok {
+				k := r.opt.Kind
+				if v := r.values[given]; v != nil {
+					k = v.Kind
+				}
+				r.set(building.Value{Field: wanted, Kind: k, Text: w}, c)
+			}
+			return
+		}
+		if v := r.values[given]; v != nil {
+			if w, ok := tells(v.Text); ok { // set by a constant or by a meter
+				r.set(building.Value{Field: wanted, Kind: v.Kind, Text: w}, r.columnOf[given])
+			}
+		}
+	}
+	from(building.HeatingSystem, building.CarrierField, word.Carrier)
+	from(building.CarrierField, building.HeatingSystem, word.System)
 }
 
 // rowSized reports whether the row gives any size.
@@ -275,7 +307,7 @@ func (r *rowReader) kind(f building.Field, c *header.Column, surveyed bool) buil
 
 // meter adds what the column of a meter reading tells beside the reading.
 func (r *rowReader) meter(c *header.Column) {
-	if c.Sense != "" && c.Sense != "second" && !r.plan.Has(building.CarrierField.Key()) {
+	if isCarrier(c.Sense) && !r.plan.Has(building.CarrierField.Key()) {
 		r.set(building.Value{Field: building.CarrierField, Kind: r.opt.Kind, Text: c.Sense}, c)
 	}
 	if c.Year > 0 && !r.plan.Has(building.MeteredYear.Key()) {

@@ -69,6 +69,11 @@ func (t *table) read() error {
 		t.skip("no row has the names of two known columns")
 		return nil
 	}
+	if t.ownResults() {
+		t.report.Own = true
+		t.skip("it is a table of results of this program, whose defaults would come back as if they were known")
+		return nil
+	}
 	t.out.HeaderRow, t.out.DataFrom = t.layout.Row, t.layout.DataFrom
 	t.plan = header.Settle(&t.layout, mapped)
 	t.out.lines = t.plan.Lines
@@ -249,7 +254,19 @@ func (t *table) sheet() *building.Sheet {
 	if t.carrierFromMeter() {
 		s.Columns[building.CarrierField] = s.Columns[building.MeteredHeat]
 	}
+	// Each tells the other where it can.
+	for _, f := range [][2]building.Field{{building.CarrierField, building.HeatingSystem}, {building.HeatingSystem, building.CarrierField}} {
+		if s.Columns[f[0]] == "" {
+			s.Columns[f[0]] = s.Columns[f[1]]
+		}
+	}
 	return s
+}
+
+// isCarrier reports whether the sense of a meter's column is an energy carrier.
+func isCarrier(sense string) bool {
+	_, ok := building.WordIndex(building.CarrierField, sense)
+	return ok
 }
 
 // carrierFromMeter reports whether the meter's column is all that tells the carrier.
@@ -258,7 +275,7 @@ func (t *table) carrierFromMeter() bool {
 		return false
 	}
 	for _, c := range t.plan.Columns(building.MeteredHeat.Key()) {
-		if c.Sense != "" && c.Sense != "second" {
+		if isCarrier(c.Sense) {
 			return true
 		}
 	}

@@ -112,6 +112,9 @@ func (fr *fieldReader) number(c *header.Column, in sheet.Cell, unit string) (bui
 		if st == cell.Absent {
 			return building.Value{}, st, problem{}
 		}
+		if st == cell.Bad && fr.field == building.Storeys {
+			return fr.storeys(in.Text)
+		}
 		if st == cell.Bad {
 			return building.Value{}, st, problem{Severity: finding.Warning, Check: "not-a-number",
 				Text: fmt.Sprintf("%q is no number for %s", clip(in.Text), fr.info.Label), Fix: "write a number, or leave the cell empty"}
@@ -143,6 +146,24 @@ func (fr *fieldReader) number(c *header.Column, in sheet.Cell, unit string) (bui
 			Text: fmt.Sprintf("%s 0 is taken as not known", fr.info.Label), Fix: "leave the cell empty, or fill in the value"}
 	}
 	return building.Value{Number: v}, cell.OK, say
+}
+
+// storeys reads a number of storeys that is written as planners do.
+func (fr *fieldReader) storeys(text string) (building.Value, cell.Status, problem) {
+	n, st := cell.ParseStoreys(text)
+	if st != cell.OK {
+		return building.Value{}, cell.Bad, problem{Severity: finding.Warning, Check: "not-a-number",
+			Text: fmt.Sprintf("%q is no number for %s", clip(text), fr.info.Label), Fix: "write a number, or leave the cell empty"}
+	}
+	v, count := building.Value{Number: n.Count}, strconv.FormatFloat(n.Count, 'f', -1, 64)
+	switch {
+	case n.Range:
+		return v, st, problem{Severity: finding.Note, Check: "storeys-range", Group: "storeys-range", Text: fmt.Sprintf("%q is taken as %s storeys", clip(text), count)}
+	case n.Attic:
+		return v, st, problem{Severity: finding.Note, Check: "storeys-attic", Group: "storeys-attic", Text: fmt.Sprintf("%q is taken as %s storeys: the attic is not counted", clip(text), count),
+			Fix: "count it where it is heated, and give the roof type as heated attic"}
+	}
+	return v, st, problem{}
 }
 
 // unit is the unit of a value: the cell's own, else the column's; none when
@@ -243,6 +264,16 @@ func (fr *fieldReader) word(c *header.Column, in sheet.Cell) (building.Value, ce
 		}
 	}
 	w, ok := word.Find(fr.field, text)
+	switch {
+	case ok:
+	case fr.field == building.CarrierField:
+		w, ok = word.Carrier(text)
+	case fr.field == building.HeatingSystem:
+		if carrier, known := word.Carrier(text); known {
+			return building.Value{}, cell.Absent, problem{Severity: finding.Note, Check: "heating-carrier", Group: "heating-carrier\x00" + cell.Fold(text),
+				Text: fmt.Sprintf("%q names no heating system and is taken for the energy carrier, %s", clip(text), carrier)}
+		}
+	}
 	if ok && w != building.VentilationWords[building.VentilationUnknown] {
 		return building.Value{Text: w}, cell.OK, problem{}
 	}

@@ -128,7 +128,7 @@ func conflict(id string, k *building.Known, records []building.Record) (finding.
 	if firm(k.Kind) != firm(lost.Kind) {
 		f.Severity = finding.Note
 	}
-	f.Text = fmt.Sprintf("%s %s in %s; %s in %s", lower(k.Field.Info().Label), said(&k.Value), place(winner), said(lost), place(loser))
+	f.Text = fmt.Sprintf("building %s: %s %s in %s; %s in %s", id, lower(k.Field.Info().Label), said(&k.Value), place(winner), said(lost), place(loser))
 	if more > 0 {
 		f.Text += fmt.Sprintf(", and %d more that differ", more)
 	}

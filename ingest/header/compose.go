@@ -47,7 +47,7 @@ type composition struct {
 }
 
 func init() {
-	for i, k := range strings.Fields("wall roof ground floor window door year renewed uvalue area type thing place number heat gas oil district use neutral") {
+	for i, k := range strings.Fields("wall roof ground floor window door year renewed uvalue area type thing place number heat gas oil district use recovery efficiency neutral") {
 		partBits[k] = 1 << i
 	}
 	envelope = partBits["wall"] | partBits["roof"] | partBits["ground"] | partBits["window"]
@@ -103,6 +103,7 @@ func init() {
 	for _, e := range [][2]string{{"district heat", "district"}, {"gas", "gas"}, {"oil", "oil"}} {
 		add(building.MeteredHeat, e[0], e[1], "heat").energy = true
 	}
+	add(building.HeatRecovery, "", "recovery efficiency", "heat")
 	for i, p := range []string{"thing", "place"} {
 		composed = append(composed, composition{all: set(p + " number"), only: set(p + " number neutral"), entry: entry{key: IDKey, sense: "second"}, after: i})
 	}

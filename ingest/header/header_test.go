@@ -97,12 +97,34 @@ func TestEverySynonymLeadsToItsField(t *testing.T) {
 			continue // a synonym with a comma in it
 		}
 		ev := Evidence{}
-		found := false
-		for _, c := range Recognise(p[2], ev) {
+		found, written := false, p[2]
+		if p[3] == energySense {
+			if got := Recognise(written, ev); len(got) > 0 && got[0].Key == p[0] {
+				t.Errorf("%q is %v without a unit of energy", written, got)
+			}
+			written += " (MWh)"
+		}
+		for _, c := range Recognise(written, ev) {
 			found = found || c.Key == p[0]
 		}
 		if !found {
-			t.Errorf("%s: %q is %v", p[0], p[2], Recognise(p[2], ev))
+			t.Errorf("%s: %q is %v", p[0], written, Recognise(written, ev))
+		}
+	}
+}
+
+func TestHeadersOfOneLanguageAreReadInAll(t *testing.T) {
+	for header, want := range map[string]string{
+		"FTX verkningsgrad": "heat_recovery", "Verkningsgrad FTX (%)": "heat_recovery", "Wirkungsgrad Wärmerückgewinnung": "heat_recovery", "rendement échangeur double flux": "heat_recovery",
+		"Fastighet": "id", "Fastighetsbeteckning": "id", "Energianvändning (MWh/år)": "metered_heat", "Energieverbrauch kWh/a": "metered_heat",
+		"Energianvändning (kWh/m2 år)": "", "Energianvändning": "", "Airing by occupants": "", "Lüftung durch Bewohner": "", "Number of occupants": "occupants",
+	} {
+		got := ""
+		if c := Recognise(header, Evidence{}); len(c) > 0 {
+			got = c[0].Key
+		}
+		if got != want {
+			t.Errorf("%q is %q, want %q", header, got, want)
 		}
 	}
 }

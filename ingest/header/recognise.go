@@ -43,6 +43,10 @@ type Candidate struct {
 	ByUnit bool          // settled by the unit or the cells, not by the words alone
 }
 
+// energySense marks headers of all energy used: heat, if it is measured in a
+// unit of energy and nothing else tells the heat.
+const energySense = "energy"
+
 const (
 	ignoredKey = "ignored"
 	looseRank  = 10
@@ -93,7 +97,7 @@ func init() {
 		}
 		k := strings.ReplaceAll(e.folded, " ", "")
 		exact[k] = append(exact[k], e)
-		if e.sense != "exact" && (strings.Contains(e.folded, " ") && len(e.folded) >= 6 || utf8.RuneCountInString(e.folded) >= 7) && !generic[e.folded] {
+		if e.sense != "exact" && e.sense != energySense && (strings.Contains(e.folded, " ") && len(e.folded) >= 6 || utf8.RuneCountInString(e.folded) >= 7) && !generic[e.folded] {
 			loose = append(loose, e)
 		}
 	}
@@ -162,6 +166,8 @@ func senseRank(sense string) int {
 		return 3
 	case "oil":
 		return 4
+	case energySense:
+		return 5
 	}
 	return 1
 }
@@ -301,6 +307,20 @@ func trimStops(s string) string {
 	return strings.Join(w, " ")
 }
 
+// agents are the words before those who do something: "airing by occupants".
+var agents = strings.Fields("by durch von par door av af por")
+
+// asAgent reports whether a header names what the synonym says only as the one
+// who does something.
+func asAgent(padded, folded string) bool {
+	for _, a := range agents {
+		if strings.Contains(padded, " "+a+" "+folded+" ") {
+			return true
+		}
+	}
+	return false
+}
+
 func (h *parsed) loose(ev Evidence) []Candidate {
 	var found []Candidate
 	padded := " " + h.variants[min(1, len(h.variants)-1)] + " "
@@ -314,6 +334,9 @@ func (h *parsed) loose(ev Evidence) []Candidate {
 			break
 		}
 		if !strings.Contains(padded, " "+e.folded+" ") && !strings.Contains(full, " "+e.folded+" ") {
+			continue
+		}
+		if e.key != ignoredKey && asAgent(full, e.folded) {
 			continue
 		}
 		if e.key != ignoredKey && len(e.folded)*100 < (len(padded)-2)*40 {
@@ -367,6 +390,9 @@ func (h *parsed) candidate(e entry, rank int, ev Evidence) (Candidate, bool) {
 		c.Key = f.Key()
 	}
 	info := f.Info()
+	if e.sense == energySense && h.unit.Base != info.Unit {
+		return c, false
+	}
 	switch info.Type {
 	case building.Number:
 		if h.foreign || rank >= looseRank && info.Group != building.Fabric && share.MatchString(h.fold) {
@@ -379,7 +405,7 @@ func (h *parsed) candidate(e entry, rank int, ev Evidence) (Candidate, bool) {
 			}
 			c.Unit = u
 		}
-		if ev.Filled > 3 && ev.Numbers*10 < ev.Filled-1 {
+		if ev.Filled > 3 && ev.Numbers*10 < ev.Filled-1 && f != building.Storeys { // "R+5", "II" are storeys
 			return c, false
 		}
 	case building.Year:

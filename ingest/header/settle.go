@@ -209,7 +209,7 @@ func (s *settler) rank(rank int) {
 		if len(cols) == 0 {
 			continue
 		}
-		if have := s.by[key]; len(have) > 0 && !several(key) && !firmer(have, cands) {
+		if have := s.by[key]; len(have) > 0 && (!several(key) || cands[0].Sense == energySense) && !firmer(have, cands) {
 			for i, c := range cols {
 				if rank < looseRank || len(c.candidates) == 1 {
 					c.How = fmt.Sprintf("%s is taken from column %s, which fits better", key, have[0].Letters())
@@ -335,6 +335,12 @@ func label(key string) string {
 	return map[string]string{IDKey: "the building id", SurveyDateKey: "the survey date", DataDateKey: "the date", DataYearKey: "the year of the data", HouseKey: "the house number"}[key]
 }
 
+// mayBeID reports whether a column could hold ids: it has a header that names no
+// unit and nothing that is known for something else.
+func mayBeID(c *Column) bool {
+	return c.Header != "" && !c.Ignored() && parse(c.Header).unit.Name == "" && !cell.ForeignUnit(c.Header) && c.How == ""
+}
+
 // required checks that the sheet is one of buildings.
 func (s *settler) required() {
 	known := 0
@@ -356,16 +362,19 @@ func (s *settler) required() {
 			s.p.Skip = "it has no column of building ids and hardly a known column"
 			return
 		}
-		var free []*Column
+		var free, texts []*Column
 		for i := range s.t.Columns {
-			if c := &s.t.Columns[i]; c.Key == "" || c.Key == building.Name.Key() {
+			c := &s.t.Columns[i]
+			f, ok := building.FieldByKey(c.Key)
+			switch {
+			case ok && f == building.Name, c.Key == "" && mayBeID(c):
 				free = append(free, c)
+			case ok && f.Info().Type == building.Text:
+				texts = append(texts, c)
 			}
 		}
 		if len(free) == 0 {
-			for i := range s.t.Columns {
-				free = append(free, &s.t.Columns[i])
-			}
+			free = texts
 		}
 		if len(free) > 8 {
 			free = free[:8]

@@ -42,6 +42,7 @@ const recovery = `(hr|heat recovery|recovery|wrg|warmeruckgewinnung|wtw|warmtete
 // A word may be made more exact by one beside it, unless that is denied.
 var (
 	reNoRecovery = regexp.MustCompile(`\b(without|no|ohne|sans|zonder|uden|utan|uten|sin) ` + recovery)
+	reSystem     = regexp.MustCompile(` ?(system|systeme|systeem|anlage|anlaeg|anlegg|ventilation|ventilasjon|luftung|aggregat)$`)
 	reRecovery   = regexp.MustCompile(`\b` + recovery)
 	reInsulated  = regexp.MustCompile(`\b(insulated|insulation|filled|fill|gedammt|kerngedammt|dammung|kerndammung|isolee?s?|isolation|geisolerde?|geisoleerde?|gevulde?|isoleret|isolert|isolerad|aislad[oa])\b`)
 	reDenied     = regexp.MustCompile(`\b(no|not|non|without|un|unfilled|ohne|nicht|sans|zonder|niet|uden|ikke|uten|utan|ej|sin)\b`)
@@ -121,6 +122,12 @@ func Find(f building.Field, text string) (string, bool) {
 		return w, true
 	}
 	if f == building.VentilationField {
+		// "F-system" and "FTX-ventilation" are said like F and FTX.
+		if kind := reSystem.ReplaceAllString(t, ""); kind != t && kind != "" {
+			if w, ok := words.exact[kind]; ok {
+				return w, true
+			}
+		}
 		t = reNoRecovery.ReplaceAllString(t, "")
 	}
 	padded := " " + t + " "

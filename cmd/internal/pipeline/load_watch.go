@@ -53,7 +53,7 @@ func (w *watch) look(b *building.Building, records []building.Record) {
 	if !sized {
 		f := at
 		f.Severity, f.Check, f.Field = finding.Warning, "no-size-known", building.FloorArea.Key()
-		f.Text, f.Fix = "no file gives a floor area or volume of the building, so it cannot be estimated", "load a file that does"
+		f.Text, f.Fix = "no file gives a floor area or volume of building "+b.ID+", so it cannot be estimated", "load a file that does"
 		w.add(f, f.Check+"\x00"+f.File)
 	}
 	bare := strings.ToLower(strings.Join(strings.Fields(b.ID), ""))
