@@ -220,6 +220,28 @@ func BenchmarkEstimate(b *testing.B) {
 	}
 }
 
+// A hundred thousand buildings with all their measures; the source makes them as they
+// are asked for, as the store does.
+func BenchmarkEstimate100000(b *testing.B) {
+	basis := testBasis(b)
+	in := many(20)
+	const n = 100_000
+	stream := func(yield func(*building.Building) error) error {
+		for i := range n {
+			if err := yield(in[i%len(in)]); err != nil {
+				return err
+			}
+		}
+		return nil
+	}
+	for range b.N {
+		if _, err := basis.Estimate(context.Background(), 2, stream, nil); err != nil {
+			b.Fatal(err)
+		}
+	}
+	b.ReportMetric(float64(b.N*n)/b.Elapsed().Seconds(), "buildings/s")
+}
+
 // A supply fan moves what an extract fan of its size moves, the other way: the
 // pressure it makes has the other sign, the flows are the same (quadrature).
 func TestSupplyOnlyIsExtractTurnedRound(t *testing.T) {

@@ -36,6 +36,7 @@ func (b *Basis) Explain(bl *building.Building) (*Explanation, error) {
 		InputShare: map[string]float64{}, Cautions: texts(caution.Texts(sum.Cautions)),
 		Measures: make([]MeasureDoc, len(b.Measures)),
 	}
+	e.Infiltration.Stack, e.Infiltration.Wind = balance.InfiltrationByDriver(&base.in, b.Climate, &base.months)
 	for k, share := range sum.InputShare {
 		e.InputShare[building.Kind(k).String()] = share
 	}

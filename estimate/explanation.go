@@ -17,6 +17,7 @@ type Explanation struct {
 	DeliveredKWh    float64            `json:"delivered_kwh_a"`
 	FansKWh         float64            `json:"fans_kwh_a"`
 	LossByPathKWh   PathDoc            `json:"loss_by_path_kwh_a"`
+	Infiltration    DriverDoc          `json:"infiltration_by_driver_kwh_a"`
 	DesignHeatLoadW float64            `json:"design_heat_load_w"`
 	CO2Kg           float64            `json:"co2_kg_a"`
 	MoneyPerYear    float64            `json:"money_a"`
@@ -87,6 +88,13 @@ type PathDoc struct {
 	Infiltration float64 `json:"infiltration"`
 	Fans         float64 `json:"fans"`
 	Airing       float64 `json:"airing"`
+}
+
+// DriverDoc splits the infiltration of PathDoc between stack and wind, in proportion
+// to their driving terms.
+type DriverDoc struct {
+	Stack float64 `json:"stack"`
+	Wind  float64 `json:"wind"`
 }
 
 // MeasureDoc is one measure on the building.

@@ -3,6 +3,7 @@ package estimate
 import (
 	"fmt"
 	"io"
+	"strconv"
 	"strings"
 	"text/tabwriter"
 )
@@ -21,8 +22,9 @@ func (e *Explanation) WriteText(out io.Writer) error {
 	p("Electricity of fans\t%.0f kWh/a\t\n", e.FansKWh)
 	p("CO2\t%.0f kg/a\t\n", e.CO2Kg)
 	p("Design heat load\t%.1f kW\tat %.1f C outdoors\n", e.DesignHeatLoadW/1000, e.Climate.DesignOutdoorC)
-	for _, c := range e.Cautions {
-		p("Caution\t%s\n", c)
+	numbers := cautionNumbers(e)
+	if len(e.Cautions) > 0 {
+		p("Cautions\t%s\tsee the end of this page\n", listed(e.Cautions, numbers))
 	}
 
 	p("\nInputs\n  field\tvalue\tunit\tkind\torigin\n")
@@ -33,21 +35,45 @@ func (e *Explanation) WriteText(out io.Writer) error {
 		p("  note: %s\n", n)
 	}
 
-	writeState(p, "As it is", s)
+	writeState(p, "As it is", s, &e.Climate)
 
+	writePaths(p, e)
+	writeMeasures(p, e, numbers)
+	if err := w.Flush(); err != nil {
+		return err
+	}
+	return writeCautions(out, e, numbers)
+}
+
+// writePaths shows where the year's heat goes.
+func writePaths(p func(string, ...any), e *Explanation) {
 	q := &e.LossByPathKWh
-	p("\nHeat loss by path, kWh/a\n")
-	for _, part := range []struct {
+	parts := []struct {
 		name string
 		v    float64
 	}{
 		{"wall", q.Wall}, {"roof", q.Roof}, {"floor", q.Floor}, {"window", q.Window}, {"door", q.Door},
 		{"bridge", q.Bridge}, {"infiltration", q.Infiltration}, {"fans", q.Fans}, {"airing", q.Airing},
-	} {
-		p("  %s\t%.0f\n", part.name, part.v)
 	}
+	sum := 0.0
+	for _, part := range parts {
+		sum += part.v
+	}
+	p("\nHeat loss by path\n  path\tkWh/a\tshare\n")
+	for _, part := range parts {
+		note := ""
+		if part.name == "infiltration" && part.v > 0 {
+			note = fmt.Sprintf("\tstack %.0f, wind %.0f", e.Infiltration.Stack, e.Infiltration.Wind)
+		}
+		p("  %s\t%.0f\t%.0f %%%s\n", part.name, part.v, 100*part.v/sum, note)
+	}
+	p("  together\t%.0f\t\n", sum)
+}
 
-	p("\nMeasures\n  measure\tquantity\tcost\tsaves kWh/a\tneed after kWh/a\tmoney/a\tNPV\tpayback a\tCO2 kg/a\n")
+// writeMeasures shows what each measure does: first what it is worth, then what it
+// changes, before and after.
+func writeMeasures(p func(string, ...any), e *Explanation, numbers map[string]int) {
+	p("\nMeasures\n  measure\tquantity\tcost\tsaves kWh/a\tneed after kWh/a\tmoney/a\tNPV\tpayback a\tCO2 kg/a\tcautions\n")
 	for _, m := range e.Measures {
 		if !m.Applies {
 			p("  %s\tdoes not apply: %s\n", m.Label, m.Reason)
@@ -57,29 +83,128 @@ func (e *Explanation) WriteText(out io.Writer) error {
 		if m.PaybackYears != nil {
 			payback = fmt.Sprintf("%.1f", *m.PaybackYears)
 		}
-		p("  %s\t%.0f %s\t%.0f\t%.0f\t%.0f\t%.0f\t%.0f\t%s\t%.0f\n", m.Label, *m.Quantity, m.Unit, *m.Cost,
-			*m.SavingKWh, m.State.NeedKWh, *m.MoneyPerYear, *m.NPV, payback, *m.CO2Kg)
+		p("  %s\t%.0f %s\t%.0f\t%.0f\t%.0f\t%.0f\t%.0f\t%s\t%.0f\t%s\n", m.Label, *m.Quantity, m.Unit, *m.Cost,
+			*m.SavingKWh, m.State.NeedKWh, *m.MoneyPerYear, *m.NPV, payback, *m.CO2Kg, listed(m.Cautions, numbers))
 		if m.CompanionM3H != nil {
-			p("    with %.0f m3/h of demand-controlled extract, which it then needs\n", *m.CompanionM3H)
+			p("    with %.0f m3/h of mechanical ventilation, which it then needs\n", *m.CompanionM3H)
 		}
 		if m.Reason != "" {
 			p("    %s\n", m.Reason)
 		}
 	}
-	seen := map[string]bool{}
-	p("\nCautions\n")
+	p("\nWhat the measures change\n  measure\twhat\tbefore\tafter\n")
 	for _, m := range e.Measures {
-		for _, c := range m.Cautions {
-			if !seen[c] {
-				seen[c] = true
-				p("  %s\n", c)
+		if m.State == nil {
+			continue
+		}
+		label := m.Label
+		for _, c := range changes(&e.State, m.State) {
+			p("  %s\t%s\t%s\t%s\n", label, c.what, c.before, c.after)
+			label = ""
+		}
+	}
+}
+
+type change struct{ what, before, after string }
+
+// changes lists what differs between two states of one building, in words.
+func changes(a, b *StateDoc) []change {
+	var out []change
+	add := func(what, format string, x, y any) {
+		if x, y := fmt.Sprintf(format, x), fmt.Sprintf(format, y); x != y {
+			out = append(out, change{what, x, y})
+		}
+	}
+	seen := map[string]bool{} // windows of four sides change alike
+	for i := range min(len(a.Elements), len(b.Elements)) {
+		x, y := &a.Elements[i], &b.Elements[i]
+		key := fmt.Sprint(x.Kind, x.Name, x.UWM2K, y.UWM2K)
+		if seen[key] {
+			continue
+		}
+		seen[key] = true
+		add("U of "+x.Kind+", "+x.Name+", W/(m2K)", "%.3f", x.UWM2K, y.UWM2K)
+		if x.TempFactor != nil && y.TempFactor != nil {
+			add("f_Rsi of it", "%.2f", *x.TempFactor, *y.TempFactor)
+		}
+		if x.G != nil && y.G != nil {
+			add("g of it", "%.2f", *x.G, *y.G)
+		}
+	}
+	add("thermal bridges, W/(m2K)", "%.3f", a.BridgeUWM2K, b.BridgeUWM2K)
+	add("n50, 1/h", "%.2f", a.Air.N50PerH, b.Air.N50PerH)
+	add("ventilation", "%s", a.Air.Ventilation, b.Air.Ventilation)
+	add("supply, m3/h", "%.0f", a.Air.SupplyM3H, b.Air.SupplyM3H)
+	add("extract, m3/h", "%.0f", a.Air.ExtractM3H, b.Air.ExtractM3H)
+	add("heat recovery, share", "%.2f", a.Air.HeatRecovery, b.Air.HeatRecovery)
+	add("airing, m3/h", "%.0f", a.Air.AiringM3H, b.Air.AiringM3H)
+	add("outdoor air, m3/h (minimum "+fmt.Sprintf("%.0f", a.Air.MinimumM3H)+")", "%.0f", a.Air.OutdoorAirM3H, b.Air.OutdoorAirM3H)
+	add("indoor temperature, C", "%.1f", a.IndoorC, b.IndoorC)
+	add("heating", "%s", a.System.Heating+", "+a.System.Carrier, b.System.Heating+", "+b.System.Carrier)
+	add("efficiency of generation", "%.2f", a.System.Generation, b.System.Generation)
+	add("efficiency of distribution", "%.2f", a.System.Distribution, b.System.Distribution)
+	add("transmission, W/K", "%.1f", a.TransmissionWK, b.TransmissionWK)
+	add("heating need, kWh/a", "%.0f", a.NeedKWh, b.NeedKWh)
+	add("delivered heat, kWh/a", "%.0f", a.System.DeliveredKWh, b.System.DeliveredKWh)
+	add("electricity of fans, kWh/a", "%.0f", a.System.FanKWh, b.System.FanKWh)
+	return out
+}
+
+// cautionNumbers numbers the cautions of the page in the order in which they come.
+func cautionNumbers(e *Explanation) map[string]int {
+	n := map[string]int{}
+	count := func(texts []string) {
+		for _, c := range texts {
+			if n[c] == 0 {
+				n[c] = len(n) + 1
 			}
 		}
 	}
-	return w.Flush()
+	count(e.Cautions)
+	for _, m := range e.Measures {
+		count(m.Cautions)
+	}
+	return n
 }
 
-func writeState(p func(string, ...any), title string, s *StateDoc) {
+// listed gives the numbers of cautions: "1, 4".
+func listed(texts []string, numbers map[string]int) string {
+	parts := make([]string, len(texts))
+	for i, c := range texts {
+		parts[i] = strconv.Itoa(numbers[c])
+	}
+	return strings.Join(parts, ", ")
+}
+
+// pageWidth is where long sentences are broken.
+const pageWidth = 100
+
+func writeCautions(out io.Writer, e *Explanation, numbers map[string]int) error {
+	if len(numbers) == 0 {
+		return nil
+	}
+	byNumber := make([]string, len(numbers))
+	for text, n := range numbers {
+		byNumber[n-1] = text
+	}
+	var b strings.Builder
+	b.WriteString("\nCautions\n")
+	for i, text := range byNumber {
+		line := fmt.Sprintf("%3d", i+1)
+		for _, word := range strings.Fields(text) {
+			if len(line)+1+len(word) > pageWidth {
+				b.WriteString(line + "\n")
+				line = "   "
+			}
+			line += " " + word
+		}
+		b.WriteString(line + "\n")
+	}
+	_, err := io.WriteString(out, b.String())
+	return err
+}
+
+func writeState(p func(string, ...any), title string, s *StateDoc, c *ClimateDoc) {
 	p("\n%s: %.0f m2 heated, %.0f m3, %.1f storeys, %.1f C indoors\n", title, s.FloorAreaM2, s.VolumeM3, s.Storeys, s.IndoorC)
 	p("  element\tname\tarea m2\tU W/(m2K)\tb\tlayers from inside, R m2K/W\n")
 	for _, el := range s.Elements {
@@ -96,12 +221,18 @@ func writeState(p func(string, ...any), title string, s *StateDoc) {
 		}
 		switch {
 		case el.Ground != nil:
-			layers = append(layers, fmt.Sprintf("ground: exposed perimeter %.1f m", el.Ground.PerimeterM))
+			layers = append(layers, groundText(el.Ground))
 		case el.RseM2KW != nil:
 			layers = append(layers, fmt.Sprintf("Rse %.2f", *el.RseM2KW))
 		}
 		if el.Orientation != "" {
 			layers = append(layers, fmt.Sprintf("%s, g %.2f, frame %.2f, shading %.2f", el.Orientation, *el.G, *el.FrameShare, *el.Shading))
+		}
+		if el.UpperM2KW != nil {
+			layers = append(layers, fmt.Sprintf("limits %.3f and %.3f m2K/W, at most %.0f %% off", *el.UpperM2KW, *el.LowerM2KW, 100**el.RelativeErr))
+		}
+		if el.Correction != nil {
+			layers = append(layers, fmt.Sprintf("%.4f W/(m2K) for gaps and fixings within U", *el.Correction))
 		}
 		if el.TempFactor != nil {
 			layers = append(layers, fmt.Sprintf("f_Rsi %.2f", *el.TempFactor))
@@ -118,10 +249,24 @@ func writeState(p func(string, ...any), title string, s *StateDoc) {
 	for i, m := range a.Months {
 		p("  %s\t%.2f\t%.0f\t%.0f\t%.0f\t%.0f\t%.1f\t%.2f\n", monthNames[i], m.WindMS, m.StackM3H, m.WindM3H, m.InfiltrationM3H, m.OutdoorAirM3H, m.HeatWK, m.AirChangesPerH)
 	}
-	p("\nBalance, kWh\n  month\tloss\tinternal\tsolar\tgains/loss\ttime constant h\tutilisation\tneed\n")
+	p("\nBalance, kWh\n  month\toutdoors C\tloss\tinternal\tsolar\tgains/loss\ttime constant h\tutilisation\tneed\n")
 	for i, m := range s.Balance {
-		p("  %s\t%.0f\t%.0f\t%.0f\t%.3f\t%.1f\t%.3f\t%.0f\n", monthNames[i], m.LossKWh, m.InternalKWh, m.SolarKWh, m.GainLossRatio, m.TimeConstantH, m.Utilisation, m.NeedKWh)
+		p("  %s\t%.1f\t%.0f\t%.0f\t%.0f\t%.3f\t%.1f\t%.3f\t%.0f\n", monthNames[i], c.Months[i].OutdoorC, m.LossKWh, m.InternalKWh, m.SolarKWh, m.GainLossRatio, m.TimeConstantH, m.Utilisation, m.NeedKWh)
 	}
+}
+
+func groundText(g *GroundDoc) string {
+	t := fmt.Sprintf("ground %.1f W/(mK), exposed perimeter %.1f m, wall %.2f m", g.GroundConductivityWMK, g.PerimeterM, g.WallThicknessM)
+	if g.PerimeterM > 0 {
+		t += fmt.Sprintf(", B' %.2f m", g.AreaM2/(0.5*g.PerimeterM))
+	}
+	if g.VoidHeightM != nil {
+		t += fmt.Sprintf(", void %.2f m above ground", *g.VoidHeightM)
+	}
+	if g.BasementDepthM != nil {
+		t += fmt.Sprintf(", %.1f m deep", *g.BasementDepthM)
+	}
+	return t
 }
 
 func inputText(in InputDoc) string {
