@@ -55,7 +55,7 @@ func ParseStoreys(s string) (Storeys, Status) {
 	if m := reStoreySpan.FindStringSubmatch(strings.TrimSpace(reStoreyWord.ReplaceAllString(t, ""))); m != nil {
 		low, ok1 := storeyNumber(m[1])
 		high, ok2 := storeyNumber(m[2])
-		if !ok1 || !ok2 || low > high || high > maxStoreys || strings.Contains(t, "/") && high-low > 3 {
+		if !ok1 || !ok2 || low > high || high <= 0 || high > maxStoreys || strings.Contains(t, "/") && high-low > 3 {
 			return out, Bad
 		}
 		out.Count, out.Range = (low+high)/2, low < high

@@ -12,7 +12,7 @@ func TestParseStoreys(t *testing.T) {
 		"G+4": {Count: 5}, "ground + 2 upper floors": {Count: 3}, "basement + 3": {Count: 3, Below: true}, "3 storeys and attic": {Count: 3, Attic: true},
 		"bg + 2": {Count: 3}, "begane grond + 2 verdiepingen + zolder": {Count: 3, Attic: true}, "PB+3": {Count: 4}, "planta baja + 3 plantas + ático": {Count: 4, Attic: true},
 		"3 plan + vind": {Count: 3, Attic: true}, "3 våningar och källare": {Count: 3, Below: true}, "st + 2 + tagetage": {Count: 3, Attic: true}, "3 etg": {Count: 3}, "zweigeschossig": {}, "2-geschossig": {Count: 2}, "5 vollgeschosse": {Count: 5},
-		"many": {}, "4-2": {}, "1/9": {}, "R+": {Count: 1}, "DG": {}, "R+500": {}, "1965": {}, "2026-04-03": {}, "12 flats": {},
+		"many": {}, "4-2": {}, "1/9": {}, "R+": {Count: 1}, "DG": {}, "R+500": {}, "1965": {}, "2026-04-03": {}, "12 flats": {}, "0-0": {}, "0": {},
 	} {
 		got, st := ParseStoreys(in)
 		if got != want || (st == OK) != (want.Count > 0) {
