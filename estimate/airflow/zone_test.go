@@ -71,10 +71,10 @@ func TestAgainstMassBalance(t *testing.T) {
 	worst := map[string]float64{}
 	for n := 0.55; n < 0.76; n += 0.05 {
 		for _, r := range []float64{0.2, 0.25, 0.3, 0.5} {
-			for _, h := range []float64{2.5, 5, 8, 12} {
+			for _, h := range []float64{2.5, 5, 8, 12, 20, 30} {
 				leaks := zone(r, h, house, mean)
-				for _, dT := range []float64{0, 5, 15, 25, 35} {
-					for _, wind := range []float64{0, 1, 2, 4, 6, 10} {
+				for _, dT := range []float64{-10, 0, 5, 15, 25, 40} {
+					for _, wind := range []float64{0, 0.5, 1, 2, 4, 6, 10} {
 						if dT == 0 && wind == 0 {
 							continue
 						}
