@@ -389,4 +389,7 @@ func (s *settler) required() {
 	if known == 0 && len(s.p.Constants) == 0 {
 		s.p.Skip = "beside building ids it has no known column"
 	}
+	if known == 1 && len(s.p.Constants) == 0 && len(s.p.Columns(building.Name.Key())) > 0 && !s.closed[building.Name.Key()] {
+		s.p.Skip = "beside ids and names, as any list has them, it has no known column"
+	}
 }
