@@ -121,7 +121,7 @@ func (t *table) unread() {
 		case why == "":
 			why = "its header is not recognised"
 		}
-		t.found.add(finding.Finding{Severity: finding.Note, Check: "unread-quantity", Column: c.Letters(), Text: fmt.Sprintf("the column %q is not read: %s", clip(c.Header), why),
+		t.found.add(finding.Finding{Severity: finding.Note, Check: finding.UnreadQuantity, Column: c.Letters(), Text: fmt.Sprintf("the column %q is not read: %s", clip(c.Header), why),
 			Fix: "if it is one of the fields, say so in a column file"})
 	}
 }

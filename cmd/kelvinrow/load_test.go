@@ -7,6 +7,8 @@ import (
 	"strings"
 	"testing"
 
+	"github.com/xuri/excelize/v2"
+
 	"kelvinrow/ingest/finding"
 )
 
@@ -128,6 +130,38 @@ func TestEveryFindingCanBeSeen(t *testing.T) {
 		if got.Used != 31 || len(got.Findings) < 30 || (got.Run > 0) != (verb == "screen") {
 			t.Errorf("%s: %d used, %d findings, run %d", verb, got.Used, len(got.Findings), got.Run)
 		}
+	}
+	u.stopped()
+}
+
+// A contradiction between files loaded earlier stands in the workbook, too.
+func TestContradictionsStandInTheWorkbook(t *testing.T) {
+	t.Parallel()
+	u := newUser(t)
+	u.write("a.csv", good)
+	u.write("b.csv", strings.Replace(good, ";95;", ";140;", 1))
+	u.must(0, "load", "a.csv")
+	if out := u.must(0, "load", "b.csv"); !strings.Contains(out, "building A-1: heated floor area 140 m2 in b.csv, row 2; 95 m2 in a.csv, row 2; b.csv is used") {
+		t.Errorf("not said at load: %s", out)
+	}
+	u.must(0, "rank", "-o", "ranked.xlsx")
+	f, err := excelize.OpenFile(filepath.Join(u.dir, "ranked.xlsx"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer f.Close()
+	rows, err := f.GetRows("Data issues")
+	if err != nil {
+		t.Fatal(err)
+	}
+	found := 0
+	for _, r := range rows {
+		if line := strings.Join(r, "|"); strings.Contains(line, "conflict") && strings.Contains(line, "140 m2 in b.csv") {
+			found++
+		}
+	}
+	if found != 1 {
+		t.Errorf("the contradiction stands %d times on the sheet of data issues", found)
 	}
 	u.stopped()
 }

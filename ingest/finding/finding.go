@@ -46,11 +46,13 @@ func SeverityByWord(w string) (Severity, bool) {
 // again: whoever mends the others must see it.
 const DuplicateFirst = "duplicate-first"
 
-// Checks whose notes are about whole files and always worth a line.
+// Checks whose notes are always worth a line.
 const (
 	FileSkipped = "file-skipped" // a file of a folder that was not read
 	OwnWorkbook = "own-workbook" // a workbook of results given as a source
 	Replaced    = "replaced"     // a file took the place of an earlier one
+	// UnreadQuantity is a column of energy, U-values or flows that is not read.
+	UnreadQuantity = "unread-quantity"
 )
 
 // Finding is one thing to say about one place in the input.

@@ -64,6 +64,9 @@ func Write(ctx context.Context, sourcePath string, report *ingest.Report, dir st
 	}
 	defer book.Close()
 	base := filepath.Base(sourcePath)
+	if filepath.Clean(dir) != filepath.Dir(sourcePath) {
+		base = strings.ReplaceAll(report.File, "/", "-") // sources of one name may come together there
+	}
 	stem := strings.TrimSuffix(base, filepath.Ext(base))
 	write, ext := writeWorkbook, ".xlsx"
 	if book.Delimiter() != 0 {

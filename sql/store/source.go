@@ -106,6 +106,15 @@ func (l *Load) register(ctx context.Context, f File) ([]Source, error) {
 	return replaced, err
 }
 
+// Keep lets a source count on whose place the one registered last has taken.
+func (l *Load) Keep(ctx context.Context, old int64) error {
+	if err := l.settle(ctx); err != nil {
+		return err
+	}
+	_, err := l.tx.Exec(ctx, "delete from kelvinrow.superseded where portfolio = $1 and source = $2 and by_source = $3", l.portfolio, old, l.source)
+	return err
+}
+
 // sources lists all sources of a portfolio, by name and number.
 func sources(ctx context.Context, tx pgx.Tx, portfolio string) ([]Source, error) {
 	rows, err := tx.Query(ctx, `select s.source, s.file, s.path, s.file_date, s.bytes, s.load, s.loaded_at, s.reading, s.sha256, coalesce(x.by_source, 0)

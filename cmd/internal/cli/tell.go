@@ -98,8 +98,8 @@ func (s *showFlags) add(c *cobra.Command) {
 }
 
 // aboutFiles are the notes that are shown without being asked for: they are
-// about whole files, and few.
-var aboutFiles = []string{finding.FileSkipped, finding.OwnWorkbook, finding.Replaced}
+// about whole files, and few; of others one of each file.
+var aboutFiles = []string{finding.FileSkipped, finding.OwnWorkbook, finding.Replaced, finding.UnreadQuantity}
 
 // tellFindings counts the findings and shows the gravest few, or all.
 func tellFindings(w io.Writer, fs []finding.Finding, show int, all bool) {

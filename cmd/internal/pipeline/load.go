@@ -154,6 +154,15 @@ func (s *Session) readOne(ctx context.Context, l *store.Load, path string, read 
 		if err != nil {
 			return f, err
 		}
+		if elsewhere(old, source) && w.BuildingsGone == w.Buildings {
+			// Not a version of it, but another district's export of the same name.
+			if err := l.Keep(ctx, old.Number); err != nil {
+				return f, err
+			}
+			f.report.Findings = append(f.report.Findings, finding.Finding{Severity: finding.Note, Check: finding.Replaced, File: source.Name,
+				Text: fmt.Sprintf("a file of this name from %s tells of other buildings and counts on", filepath.Dir(old.Path)), Fix: "if this is a version of it, take that one back (load --undo)"})
+			continue
+		}
 		f.report.Findings = append(f.report.Findings, replaced(old, source, w))
 	}
 	return f, nil
@@ -163,10 +172,10 @@ func (s *Session) readOne(ctx context.Context, l *store.Load, path string, read 
 func replaced(old store.Source, now store.File, w store.Withdrawal) finding.Finding {
 	f := finding.Finding{Severity: finding.Note, Check: finding.Replaced, File: now.Name}
 	of := fmt.Sprintf("%s, dated %s and loaded on %s", old.File, old.FileDate, old.Loaded.Format("2006-01-02"))
-	switch elsewhere := old.Path != "" && old.Path != now.Path; {
+	switch {
 	case old.Reading != now.Reading && old.SameContent(now.SHA256):
 		f.Text = fmt.Sprintf("the same content was loaded before, read as %s; now read as %s, it takes the place of that", orUnknown(old.Reading), now.Reading)
-	case elsewhere:
+	case elsewhere(old, now):
 		f.Severity = finding.Warning
 		f.Text = fmt.Sprintf("takes the place of %s from %s", of, filepath.Dir(old.Path))
 		f.Fix = "if they are different files and not versions of one, take this one back (load --undo) and load both in one command"
@@ -178,6 +187,11 @@ func replaced(old store.Source, now store.File, w store.Withdrawal) finding.Find
 	}
 	f.Text += fmt.Sprintf(": of its %d buildings %d are withdrawn, of its %d values %d are withdrawn and %d change", w.Buildings, w.BuildingsGone, w.Values, w.ValuesGone, w.ValuesChanged)
 	return f
+}
+
+// elsewhere reports whether a file of the same name lay in another place.
+func elsewhere(old store.Source, now store.File) bool {
+	return old.Path != "" && old.Path != now.Path && !old.SameContent(now.SHA256)
 }
 
 func orUnknown(reading string) string {

@@ -143,6 +143,11 @@ func TestCorrectedFileSaysWhatItWithdraws(t *testing.T) {
 	if s := said(out, finding.Replaced); len(s) != 1 || !strings.Contains(s[0], "from "+b.dir) || !strings.HasPrefix(s[0], "warning") {
 		t.Errorf("said %q", s)
 	}
+	// Where it tells of other buildings altogether, it is.
+	out = b.files(b.write("third/r.csv", head+"Z;school;1970;950;natural\n"))
+	if s := said(out, finding.Replaced); len(s) != 1 || !strings.Contains(s[0], "tells of other buildings and counts on") || b.ids() != "A Z" {
+		t.Errorf("said %q, buildings %s", s, b.ids())
+	}
 	fs, err := b.s.Store.Findings(t.Context(), "p")
 	if err != nil || !slices.ContainsFunc(fs, func(f finding.Finding) bool { return f.Check == finding.Replaced }) {
 		t.Errorf("not kept with the findings: %v, %v", fs, err)
