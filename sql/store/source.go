@@ -151,6 +151,8 @@ func (l *Load) Withdrawn(ctx context.Context, old int64) (w Withdrawal, err erro
 	if err := l.settle(ctx); err != nil {
 		return w, err
 	}
+	// Both are grouped at once: a join of the two would be planned without
+	// knowing how many rows have just come in.
 	var merged, had, gone, changed []string
 	for f := range building.NumFields {
 		column := pgx.Identifier{fieldColumns(building.Field(f))[0]}.Sanitize()
@@ -158,18 +160,27 @@ func (l *Load) Withdrawn(ctx context.Context, old int64) (w Withdrawal, err erro
 		if building.Field(f).Info().Type == building.YesNo {
 			most = "bool_or"
 		}
-		merged = append(merged, fmt.Sprintf("%s(%s) as %s", most, column, column))
-		had = append(had, "o."+column)
-		gone = append(gone, fmt.Sprintf("(o.%s is not null and n.%s is null)::int", column, column))
-		changed = append(changed, fmt.Sprintf("coalesce(o.%s <> n.%s, false)::int", column, column))
+		before, after := fmt.Sprintf("b%d", f), fmt.Sprintf("a%d", f)
+		merged = append(merged, fmt.Sprintf("%s(%s) filter (where sheet = any($2)) as %s, %[1]s(%[2]s) filter (where sheet = any($3)) as %[4]s", most, column, before, after))
+		had = append(had, before)
+		gone = append(gone, fmt.Sprintf("(%s is not null and %s is null)::int", before, after))
+		changed = append(changed, fmt.Sprintf("coalesce(%s <> %s, false)::int", before, after))
 	}
-	said := func(source string) string {
-		return `(select building, ` + strings.Join(merged, ", ") + ` from kelvinrow.record where portfolio = $1
-			and sheet in (select sheet from kelvinrow.sheet where portfolio = $1 and source = ` + source + `) group by building)`
+	var sheets [2][]int64
+	for i, source := range []int64{old, l.source} {
+		rows, err := l.tx.Query(ctx, "select sheet from kelvinrow.sheet where portfolio = $1 and source = $2", l.portfolio, source)
+		if err != nil {
+			return w, err
+		}
+		if sheets[i], err = pgx.CollectRows(rows, pgx.RowTo[int64]); err != nil {
+			return w, err
+		}
 	}
-	err = l.tx.QueryRow(ctx, `select count(*), coalesce(sum(num_nonnulls(`+strings.Join(had, ", ")+`)), 0), count(*) filter (where n.building is null),
+	err = l.tx.QueryRow(ctx, `select count(*), coalesce(sum(num_nonnulls(`+strings.Join(had, ", ")+`)), 0), count(*) filter (where not still),
 		coalesce(sum(`+strings.Join(gone, " + ")+`), 0), coalesce(sum(`+strings.Join(changed, " + ")+`), 0)
-		from `+said("$2")+` o left join `+said("$3")+` n using (building)`, l.portfolio, old, l.source).
+		from (select bool_or(sheet = any($2)) as was, bool_or(sheet = any($3)) as still, `+strings.Join(merged, ", ")+`
+			from kelvinrow.record where portfolio = $1 and (sheet = any($2) or sheet = any($3)) group by building) both_of_them
+		where was`, l.portfolio, sheets[0], sheets[1]).
 		Scan(&w.Buildings, &w.Values, &w.BuildingsGone, &w.ValuesGone, &w.ValuesChanged)
 	if err != nil {
 		return w, fmt.Errorf("compare with the earlier version: %w", err)

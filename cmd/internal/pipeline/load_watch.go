@@ -19,6 +19,7 @@ import (
 type watch struct {
 	list   []finding.Finding
 	listed map[string]int // by what they are alike in
+	more   map[string]int // place in list of the one that counts the rest
 	ids    map[string]sighting
 }
 
@@ -26,7 +27,9 @@ type sighting struct {
 	id, place string
 }
 
-func newWatch() *watch { return &watch{listed: map[string]int{}, ids: map[string]sighting{}} }
+func newWatch() *watch {
+	return &watch{listed: map[string]int{}, more: map[string]int{}, ids: map[string]sighting{}}
+}
 
 // perKind is how many findings that are alike are listed one by one.
 const perKind = 100
@@ -70,13 +73,16 @@ func (w *watch) look(b *building.Building, records []building.Record) {
 
 func (w *watch) add(f finding.Finding, alike string) {
 	w.listed[alike]++
-	switch n := w.listed[alike]; {
-	case n <= perKind:
+	n := w.listed[alike]
+	if n == perKind+1 {
+		w.more[alike] = len(w.list)
+		f.Building, f.Raw, f.Fix = "", "", ""
+	}
+	if n <= perKind+1 {
 		w.list = append(w.list, f)
-	case n == perKind+1:
-		f.Building, f.Raw, f.Row, f.Column = "", "", 0, ""
-		f.Text, f.Fix = "and so on, in more than "+fmt.Sprint(perKind)+" buildings", ""
-		w.list = append(w.list, f)
+	}
+	if n > perKind {
+		w.list[w.more[alike]].Text = fmt.Sprintf("and so in %d buildings more, of which this is the first", n-perKind)
 	}
 }
 
