@@ -111,7 +111,7 @@ func (b *Basis) try(mm *measure.Measure, m *Model, before *outcome, after *measu
 	if effect.LessAir && after.out.underVentilated {
 		r.CompanionQuantity = measure.Companion(effect.State, b.companion)
 		if r.CompanionQuantity > 0 {
-			c := b.companion.FixedCost + b.companion.UnitCost*r.CompanionQuantity
+			c := b.companion.Cost(r.CompanionQuantity)
 			cost += c
 			upkeep += b.companion.UpkeepShare * c
 			b.run(effect.State, &after.out)

@@ -155,16 +155,24 @@ func TestIndexResolvesLayers(t *testing.T) {
 }
 
 func TestParseTarget(t *testing.T) {
-	for _, text := range []string{"thickness", "=1", "a=b", "a=NaN", "a=1; a=2", "a=1,b=2"} {
-		if got, err := ParseTarget(text); err == nil {
-			t.Errorf("%q is read as %v", text, got)
+	for _, text := range []string{"thickness", "=1", "a=b", "a=NaN", "a=1; a=2", "a=1,b=2", "a=1 (2)", "a=1 (0 to x)"} {
+		var m Measure
+		if err := m.parseTargets(text); err == nil {
+			t.Errorf("%q is read as %v", text, m.Target)
 		} else if !strings.Contains(err.Error(), "target") {
 			t.Errorf("%q: %v", text, err)
 		}
 	}
-	got, err := ParseTarget(" u = 0.9;; g=0.5 ")
-	if err != nil || len(got) != 2 || got["u"] != 0.9 || got["g"] != 0.5 {
-		t.Errorf("%v, %v", got, err)
+	var m Measure
+	err := m.parseTargets(" u = 0.9 (0.8 to 1.1);; g=0.5 ")
+	if err != nil || len(m.Target) != 2 || m.Target["u"] != 0.9 || m.Target["g"] != 0.5 {
+		t.Errorf("%v, %v", m.Target, err)
+	}
+	if low, high := m.TargetSpread("u"); low != 0.8 || high != 1.1 {
+		t.Errorf("spread of u: %g to %g", low, high)
+	}
+	if low, high := m.TargetSpread("g"); low != 0.5 || high != 0.5 {
+		t.Errorf("spread of g: %g to %g", low, high)
 	}
 }
 

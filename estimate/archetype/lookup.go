@@ -60,28 +60,36 @@ func (s *Set) Clone() *Set {
 	c.Carriers = slices.Clone(s.Carriers)
 	c.Measures = slices.Clone(s.Measures)
 	for i := range c.Measures {
-		c.Measures[i].Target = maps.Clone(c.Measures[i].Target)
+		m := &c.Measures[i]
+		m.Target, m.TargetLow, m.TargetHigh = maps.Clone(m.Target), maps.Clone(m.TargetLow), maps.Clone(m.TargetHigh)
 	}
 	c.Climates = slices.Clone(s.Climates)
+	c.Surveys = slices.Clone(s.Surveys)
 	return &c
 }
 
-// resolveLayers gives layers that only name a material its conductivity.
+// resolveLayers gives layers that only name a material its conductivity, and their
+// second material likewise.
 func (s *Set) resolveLayers() {
 	byName := make(map[string]float64, len(s.Materials))
 	for i := range s.Materials {
 		byName[s.Materials[i].Name] = s.Materials[i].ConductivityWMK
 	}
 	open := func(l fabric.Layer) bool { return l.ConductivityWMK == 0 && l.ResistanceM2KW == 0 }
+	openBridge := func(l fabric.Layer) bool { return l.BridgeShare > 0 && l.BridgeConductivityWMK == 0 }
 	for i := range s.Buildups {
 		b := &s.Buildups[i]
-		if !slices.ContainsFunc(b.Layers, open) {
+		if !slices.ContainsFunc(b.Layers, open) && !slices.ContainsFunc(b.Layers, openBridge) {
 			continue
 		}
 		b.Layers = slices.Clone(b.Layers) // states may share the old ones
 		for j := range b.Layers {
-			if l := &b.Layers[j]; open(*l) {
+			l := &b.Layers[j]
+			if open(*l) {
 				l.ConductivityWMK = byName[l.Name]
+			}
+			if openBridge(*l) {
+				l.BridgeConductivityWMK = byName[l.BridgeName]
 			}
 		}
 	}

@@ -7,6 +7,8 @@
 package archetype
 
 import (
+	"math"
+
 	"kelvinrow/estimate/building"
 	"kelvinrow/estimate/climate"
 	"kelvinrow/estimate/fabric"
@@ -106,7 +108,7 @@ type Rule struct {
 	Typical, Low, High float64 // Low and High are the 5th and 95th percentile
 	Word               string  // for properties with a word
 	Shared             float64 // share of the spread that all buildings under the rule have in common
-	Source             string
+	Source, Notes      string
 }
 
 // Use holds the conditions of use.
@@ -124,14 +126,14 @@ type Use struct {
 	MinAirLSPerson  float64 // and per person
 	AreaPerPersonM2 float64
 	HotWaterKWhM2   float64 // kWh/(m2 a) at the generator's outlet
-	Source          string
+	Source, Notes   string
 }
 
 // Material is a building material with its design conductivity.
 type Material struct {
 	Name            string
 	ConductivityWMK float64
-	Source          string
+	Source, Notes   string
 }
 
 // Buildup is a named sequence of layers from inside to outside.
@@ -142,6 +144,7 @@ type Buildup struct {
 	BothInside bool // next to an unheated space: R_si on both sides
 	Layers     []fabric.Layer
 	Source     string
+	Notes      string
 }
 
 // Carrier is an energy carrier.
@@ -151,6 +154,7 @@ type Carrier struct {
 	PriceRise   float64 // real, per year
 	CO2KgKWh    float64
 	Source      string
+	Notes       string
 }
 
 // Measure holds the terms of a retrofit measure: what it costs and how far it
@@ -160,11 +164,42 @@ type Measure struct {
 	Label       string
 	Unit        string  // what Quantity counts: "m2" (treated area), "m2 floor" (heated floor area), "m3/h", "dwelling", "building", "kW"
 	FixedCost   float64 // per building
-	UnitCost    float64 // per unit
+	UnitCost    float64 // per unit, up to SizeFrom units
 	LifeYears   float64
-	UpkeepShare float64            // of the investment, per year
-	Target      map[string]float64 // named parameters: "thickness_m", "conductivity_w_mk", "u", "g", "n50_factor", ...
-	Source      string
+	UpkeepShare float64 // of the investment, per year
+
+	// Economies of size: beyond SizeFrom units, a unit costs (quantity/SizeFrom)
+	// to the power of -SizeExponent of UnitCost; none where SizeExponent is 0.
+	SizeFrom, SizeExponent float64
+
+	// 5th and 95th percentile of what it costs over typical; both 0 where not given.
+	CostLow, CostHigh float64
+
+	Target                map[string]float64 // named parameters: "thickness_m", "conductivity_w_mk", "u", "g", "n50_factor", ...
+	TargetLow, TargetHigh map[string]float64 // of those that have a spread
+
+	Source, Notes string
+}
+
+// Cost is what a quantity of the measure costs: FixedCost + UnitCost quantity,
+// units beyond SizeFrom cheaper.
+func (m *Measure) Cost(quantity float64) float64 {
+	return m.FixedCost + float64(m.UnitCost*quantity*m.SizeFactor(quantity))
+}
+
+// SizeFactor is the share of UnitCost that a unit costs at a quantity.
+func (m *Measure) SizeFactor(quantity float64) float64 {
+	if m.SizeExponent == 0 || !(quantity > m.SizeFrom) {
+		return 1
+	}
+	return math.Pow(quantity/m.SizeFrom, -m.SizeExponent)
+}
+
+// SurveyCost is what it costs to survey one building for a group of fields.
+type SurveyCost struct {
+	Group         string // geometry, fabric, air, system or meter
+	Cost          float64
+	Source, Notes string
 }
 
 // Economics holds what money is counted with.
@@ -173,6 +208,7 @@ type Economics struct {
 	DiscountRate float64 // real, per year
 	PeriodYears  float64
 	Source       string
+	Notes        string
 }
 
 // Set is everything an estimate rests on beside the building itself.
@@ -184,6 +220,7 @@ type Set struct {
 	Carriers  []Carrier
 	Measures  []Measure
 	Economics Economics
+	Surveys   []SurveyCost
 	Climates  []climate.Climate
 
 	index ruleIndex

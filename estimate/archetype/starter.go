@@ -54,6 +54,7 @@ func parse(dir fs.FS) (*Set, error) {
 		{"carriers.csv", readCarrier},
 		{"measures.csv", readMeasure},
 		{"economics.csv", readEconomics},
+		{"surveys.csv", readSurvey},
 	} {
 		errs = append(errs, readTable(dir, t.file, func(r *row) { t.row(s, r) }))
 	}
@@ -207,7 +208,7 @@ func readLayer(s *Set, r *row) {
 		l.ConductivityWMK = material("layer", l.Name)
 	}
 	if bridge := r.text("bridge_material"); bridge != "" {
-		l.BridgeConductivityWMK = material("bridge_material", bridge)
+		l.BridgeName, l.BridgeConductivityWMK = bridge, material("bridge_material", bridge)
 	}
 	l.Fixings = fabric.Fixings{PerM2: r.number("fixings_per_m2"), SectionM2: r.number("fixing_mm2") / 1e6, ConductivityWMK: r.number("fixing_w_mk")}
 	gaps := r.text("gaps")
@@ -259,11 +260,16 @@ func readMeasure(s *Set, r *row) {
 		Key: r.text("key"), Label: r.text("label"), Unit: r.text("unit"), FixedCost: r.number("fixed_cost"), UnitCost: r.number("unit_cost"),
 		LifeYears: r.number("life_years"), UpkeepShare: r.number("upkeep_share"), Source: r.text("source"),
 	}
-	var err error
-	if m.Target, err = ParseTarget(r.text("target")); err != nil {
+	m.SizeFrom, m.SizeExponent = r.number("size_from"), r.number("size_exponent")
+	m.CostLow, m.CostHigh = r.number("cost_low"), r.number("cost_high")
+	if err := m.parseTargets(r.text("target")); err != nil {
 		r.problem("target", "%v", err)
 	}
 	s.Measures = append(s.Measures, m)
+}
+
+func readSurvey(s *Set, r *row) {
+	s.Surveys = append(s.Surveys, SurveyCost{Group: r.text("group"), Cost: r.number("cost"), Source: r.text("source")})
 }
 
 func readEconomics(s *Set, r *row) {
@@ -273,35 +279,4 @@ func readEconomics(s *Set, r *row) {
 	s.Economics = Economics{
 		Currency: r.text("currency"), DiscountRate: r.number("discount_rate"), PeriodYears: r.number("period_years"), Source: r.text("source"),
 	}
-}
-
-// ParseTarget reads target parameters as written in the measures table:
-// "thickness_m=0.16; conductivity_w_mk=0.035".
-func ParseTarget(text string) (map[string]float64, error) {
-	out := map[string]float64{}
-	for part := range strings.SplitSeq(text, ";") {
-		if part = strings.TrimSpace(part); part == "" {
-			continue
-		}
-		name, value, ok := strings.Cut(part, "=")
-		name = strings.TrimSpace(name)
-		x, err := strconv.ParseFloat(strings.TrimSpace(value), 64)
-		if !ok || err != nil || name == "" || math.IsNaN(x) || math.IsInf(x, 0) {
-			return nil, fmt.Errorf("target %q is not of the form name=number", part)
-		}
-		if _, twice := out[name]; twice {
-			return nil, fmt.Errorf("target %s stands twice", name)
-		}
-		out[name] = x
-	}
-	return out, nil
-}
-
-// FormatTarget writes target parameters as ParseTarget reads them, by name.
-func FormatTarget(target map[string]float64) string {
-	parts := make([]string, 0, len(target))
-	for _, name := range sortedKeys(target) {
-		parts = append(parts, name+"="+strconv.FormatFloat(target[name], 'g', -1, 64))
-	}
-	return strings.Join(parts, "; ")
 }

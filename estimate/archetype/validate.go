@@ -28,39 +28,85 @@ func (s *Set) Validate() error {
 	v.carriers()
 	v.measures()
 	v.economics()
+	v.surveys()
 	v.rules()
 	v.contradictions()
 	v.holes()
 	return errors.Join(v.problems...)
 }
 
+// Problem is one thing wrong with a set, and where: Table is one of the names of
+// tables below, "" for what is wrong with several; Key names the row (of layers: the
+// build-up, with Layer counted from 1); What is the quantity, "" for the whole row.
+type Problem struct {
+	Table, Key string
+	Layer      int
+	What       string
+	Text       string
+}
+
+func (p *Problem) Error() string { return p.Text }
+
+// Names of the tables of a set.
+const (
+	UsesTable      = "uses"
+	MaterialsTable = "materials"
+	BuildupsTable  = "buildups"
+	RulesTable     = "rules"
+	CarriersTable  = "carriers"
+	MeasuresTable  = "measures"
+	EconomicsTable = "economics"
+	SurveyTable    = "survey costs"
+)
+
 type validator struct {
 	set      *Set
 	problems []error
 }
 
+// place is a row of a table.
+type place struct {
+	table, key string
+	layer      int
+	text       string
+}
+
+func (p place) String() string { return p.text }
+
+// add reports what is wrong with several rows, or with a whole table.
 func (v *validator) add(format string, args ...any) {
-	v.problems = append(v.problems, fmt.Errorf(format, args...))
+	v.problems = append(v.problems, &Problem{Text: fmt.Sprintf(format, args...)})
+}
+
+// at reports what is wrong with one row.
+func (v *validator) at(p place, what, format string, args ...any) {
+	v.problems = append(v.problems, &Problem{
+		Table: p.table, Key: p.key, Layer: p.layer, What: what, Text: p.text + ": " + fmt.Sprintf(format, args...),
+	})
 }
 
 // within checks a number of a row against bounds; NaN is within none.
-func (v *validator) within(row, what string, x, low, high float64) {
+func (v *validator) within(row place, what string, x, low, high float64) {
 	if !(x >= low && x <= high) {
-		v.add("%s: %s %g is not between %g and %g", row, what, x, low, high)
+		v.at(row, what, "%s %g is not between %g and %g", what, x, low, high)
 	}
 }
 
-func (v *validator) named(row, source string) {
+func (v *validator) named(row place, source string) {
 	if strings.TrimSpace(source) == "" {
-		v.add("%s: no source", row)
+		v.at(row, "source", "no source")
 	}
+}
+
+func rowOf(table, noun, key string) place {
+	return place{table: table, key: key, text: fmt.Sprintf("%s %q", noun, key)}
 }
 
 func (v *validator) uses() {
 	for i, u := range v.set.Uses {
-		row := fmt.Sprintf("use %q", building.UseWords[i])
+		row := rowOf(UsesTable, "use", building.UseWords[i])
 		if u.Word != building.UseWords[i] {
-			v.add("%s: missing from the uses table", row)
+			v.at(row, "", "missing from the uses table")
 			continue
 		}
 		v.within(row, "indoor temperature", u.IndoorC, 0, 35)
@@ -80,18 +126,18 @@ func (v *validator) uses() {
 	}
 }
 
-func (v *validator) ordered(row, what string, low, typical, high float64) {
+func (v *validator) ordered(row place, what string, low, typical, high float64) {
 	if !(low <= typical && typical <= high) {
-		v.add("%s: %s is not low <= typical <= high: %g, %g, %g", row, what, low, typical, high)
+		v.at(row, what, "%s is not low <= typical <= high: %g, %g, %g", what, low, typical, high)
 	}
 }
 
 func (v *validator) materials() {
 	seen := map[string]bool{}
 	for _, m := range v.set.Materials {
-		row := fmt.Sprintf("material %q", m.Name)
+		row := rowOf(MaterialsTable, "material", m.Name)
 		if m.Name == "" || seen[m.Name] {
-			v.add("%s: name empty or used twice", row)
+			v.at(row, "name", "name empty or used twice")
 		}
 		seen[m.Name] = true
 		v.within(row, "conductivity", m.ConductivityWMK, 0.001, 500)
@@ -103,21 +149,22 @@ func (v *validator) buildups() {
 	directions := map[string]fabric.Direction{"wall": fabric.Horizontal, "roof": fabric.Up, "floor": fabric.Down}
 	seen := map[string]bool{}
 	for _, b := range v.set.Buildups {
-		row := fmt.Sprintf("build-up %q", b.Name)
+		row := rowOf(BuildupsTable, "build-up", b.Name)
 		if b.Name == "" || seen[b.Name] {
-			v.add("%s: name empty or used twice", row)
+			v.at(row, "name", "name empty or used twice")
 		}
 		seen[b.Name] = true
 		if d, ok := directions[b.Element]; !ok {
-			v.add("%s: unknown element %q", row, b.Element)
+			v.at(row, "element", "unknown element %q", b.Element)
 		} else if d != b.Direction {
-			v.add("%s: direction of heat flow does not fit a %s", row, b.Element)
+			v.at(row, "element", "direction of heat flow does not fit a %s", b.Element)
 		}
 		if len(b.Layers) == 0 {
-			v.add("%s: no layers", row)
+			v.at(row, "", "no layers")
 		}
 		for i, l := range b.Layers {
-			row := fmt.Sprintf("%s, layer %d (%s)", row, i+1, l.Name)
+			row := row
+			row.layer, row.text = i+1, fmt.Sprintf("%s, layer %d (%s)", row, i+1, l.Name)
 			conductivity := l.ConductivityWMK
 			if m, ok := pick(v.set.Materials, func(m *Material) bool { return m.Name == l.Name }); ok && conductivity == 0 {
 				conductivity = m.ConductivityWMK
@@ -127,7 +174,7 @@ func (v *validator) buildups() {
 				v.within(row, "resistance", l.ResistanceM2KW, 0.001, 20)
 				v.within(row, "thickness", l.ThicknessM, 0, 5)
 			case conductivity == 0:
-				v.add("%s: neither a known material nor a conductivity nor a resistance", row)
+				v.at(row, "layer", "neither a known material nor a conductivity nor a resistance")
 			default:
 				v.within(row, "conductivity", conductivity, 0.001, 500)
 				v.within(row, "thickness", l.ThicknessM, 0.0001, 5)
@@ -138,7 +185,7 @@ func (v *validator) buildups() {
 				v.within(row, "thickness of a bridged layer", l.ThicknessM, 0.0001, 5)
 			}
 			if l.Gaps > fabric.GapsOpen {
-				v.add("%s: unknown air gaps", row)
+				v.at(row, "gaps", "unknown air gaps")
 			}
 			if f := l.Fixings; f != (fabric.Fixings{}) {
 				v.within(row, "fixings per m2", f.PerM2, 0.01, 100)
@@ -155,12 +202,12 @@ func (v *validator) carriers() {
 	words := building.Words(building.CarrierField)
 	seen := map[string]bool{}
 	for _, c := range v.set.Carriers {
-		row := fmt.Sprintf("carrier %q", c.Word)
+		row := rowOf(CarriersTable, "carrier", c.Word)
 		switch {
 		case !slices.Contains(words, c.Word):
-			v.add("%s: unknown word; known are %s", row, strings.Join(words, ", "))
+			v.at(row, "carrier", "unknown word; known are %s", strings.Join(words, ", "))
 		case seen[c.Word]:
-			v.add("%s: twice", row)
+			v.at(row, "", "twice")
 		}
 		seen[c.Word] = true
 		v.within(row, "price", c.PricePerKWh, 0, 1000)
@@ -178,45 +225,85 @@ func (v *validator) carriers() {
 func (v *validator) measures() {
 	seen := map[string]bool{}
 	for _, m := range v.set.Measures {
-		row := fmt.Sprintf("measure %q", m.Key)
+		row := rowOf(MeasuresTable, "measure", m.Key)
 		if m.Key == "" || seen[m.Key] {
-			v.add("%s: key empty or used twice", row)
+			v.at(row, "key", "key empty or used twice")
 		}
 		seen[m.Key] = true
 		if m.Label == "" {
-			v.add("%s: no label", row)
+			v.at(row, "label", "no label")
 		}
 		if !slices.Contains(measureUnits, m.Unit) {
-			v.add("%s: unknown unit %q; known are %s", row, m.Unit, strings.Join(measureUnits, ", "))
+			v.at(row, "unit", "unknown unit %q; known are %s", m.Unit, strings.Join(measureUnits, ", "))
 		}
 		v.within(row, "fixed cost", m.FixedCost, 0, 1e9)
 		v.within(row, "unit cost", m.UnitCost, 0, 1e9)
 		v.within(row, "life", m.LifeYears, 1, 200)
 		v.within(row, "upkeep share", m.UpkeepShare, 0, 1)
+		if m.SizeExponent != 0 || m.SizeFrom != 0 {
+			v.within(row, "size exponent", m.SizeExponent, 0, 0.9)
+			v.within(row, "size from", m.SizeFrom, 1e-9, 1e9)
+		}
+		if m.CostLow != 0 || m.CostHigh != 0 {
+			v.within(row, "low cost", m.CostLow, 0.01, 1)
+			v.within(row, "high cost", m.CostHigh, 1, 100)
+		}
+		if m.FixedCost == 0 && m.UnitCost == 0 {
+			v.at(row, "unit cost", "costs nothing: give a fixed cost, a unit cost or both")
+		}
 		for _, name := range sortedKeys(m.Target) {
 			if x := m.Target[name]; math.IsNaN(x) || math.IsInf(x, 0) {
-				v.add("%s: target %s is not a number", row, name)
+				v.at(row, "", "target %s is not a number", name)
 			}
 		}
 		for _, t := range measureTargets[m.Key] {
 			if x, ok := m.Target[t.name]; !ok {
-				v.add("%s: target %s is missing", row, t.name)
+				v.at(row, "", "target %s is missing", t.name)
 			} else {
 				v.within(row, "target "+t.name, x, t.low, t.high)
+				low, high := m.TargetSpread(t.name)
+				v.within(row, "low of target "+t.name, low, t.low, t.high)
+				v.within(row, "high of target "+t.name, high, t.low, t.high)
+				v.ordered(row, "target "+t.name, low, x, high)
 			}
 		}
 		v.named(row, m.Source)
 	}
 }
 
+// SurveyGroups are the groups of fields a survey may be for.
+var SurveyGroups = []string{"geometry", "fabric", "air", "system", "meter"}
+
+func (v *validator) surveys() {
+	seen := map[string]bool{}
+	for _, c := range v.set.Surveys {
+		row := rowOf(SurveyTable, "survey of", c.Group)
+		switch {
+		case !slices.Contains(SurveyGroups, c.Group):
+			v.at(row, "group", "unknown group; known are %s", strings.Join(SurveyGroups, ", "))
+		case seen[c.Group]:
+			v.at(row, "group", "twice")
+		}
+		seen[c.Group] = true
+		v.within(row, "cost", c.Cost, 0, 1e7)
+		v.named(row, c.Source)
+	}
+	for _, g := range SurveyGroups {
+		if !seen[g] {
+			v.add("survey of %q: missing from the survey costs", g)
+		}
+	}
+}
+
 func (v *validator) economics() {
 	e := v.set.Economics
+	row := place{table: EconomicsTable, text: "economics"}
 	if e.Currency == "" {
-		v.add("economics: no currency")
+		v.at(row, "currency", "no currency")
 	}
-	v.within("economics", "discount rate", e.DiscountRate, -0.5, 1)
-	v.within("economics", "period", e.PeriodYears, 1, 200)
-	v.named("economics", e.Source)
+	v.within(row, "discount rate", e.DiscountRate, -0.5, 1)
+	v.within(row, "period", e.PeriodYears, 1, 200)
+	v.named(row, e.Source)
 }
 
 func (v *validator) rules() {
@@ -227,31 +314,31 @@ func (v *validator) rules() {
 	seen := map[string]bool{}
 	for i := range v.set.Rules {
 		r := &v.set.Rules[i]
-		row := fmt.Sprintf("rule %q", r.ID)
+		row := rowOf(RulesTable, "rule", r.ID)
 		if r.ID == "" || seen[r.ID] {
-			v.add("%s: id empty or used twice", row)
+			v.at(row, "id", "id empty or used twice")
 		}
 		seen[r.ID] = true
 		info, ok := r.Property.Info()
 		if !ok {
-			v.add("%s: unknown property %q", row, r.Property)
+			v.at(row, "property", "unknown property %q", r.Property)
 			continue
 		}
 		v.matchColumns(row, r, &info)
 		if info.IsWord {
 			switch {
 			case r.Typical != 0 || r.Low != 0 || r.High != 0:
-				v.add("%s: %s takes a word, not a number", row, r.Property)
+				v.at(row, "typical", "%s takes a word, not a number", r.Property)
 			case info.Element != "" && elements[r.Word] != info.Element:
-				v.add("%s: no %s build-up is called %q", row, info.Element, r.Word)
+				v.at(row, "word", "no %s build-up is called %q", info.Element, r.Word)
 			case info.Element == "" && !slices.Contains(building.Words(info.WordField), r.Word):
-				v.add("%s: unknown word %q for %s", row, r.Word, r.Property)
+				v.at(row, "word", "unknown word %q for %s", r.Word, r.Property)
 			case r.Property == VentilationWord && r.Word == building.VentilationUnknown.String():
-				v.add("%s: an unknown ventilation needs a definite word", row)
+				v.at(row, "word", "an unknown ventilation needs a definite word")
 			}
 		} else {
 			if r.Word != "" {
-				v.add("%s: %s takes a number, not the word %q", row, r.Property, r.Word)
+				v.at(row, "word", "%s takes a number, not the word %q", r.Property, r.Word)
 			}
 			v.within(row, "low", r.Low, info.Min, info.Max)
 			v.within(row, "typical", r.Typical, info.Min, info.Max)
@@ -263,27 +350,27 @@ func (v *validator) rules() {
 	}
 }
 
-func (v *validator) matchColumns(row string, r *Rule, info *PropertyInfo) {
+func (v *validator) matchColumns(row place, r *Rule, info *PropertyInfo) {
 	if r.Use != "" && r.Use != groupHouse && r.Use != groupHousing && r.Use != groupOther {
 		if _, ok := building.WordIndex(building.UseField, r.Use); !ok {
-			v.add("%s: unknown use %q", row, r.Use)
+			v.at(row, "use", "unknown use %q", r.Use)
 		}
 	}
 	if r.Attachment != "" {
 		if _, ok := building.WordIndex(building.AttachmentField, r.Attachment); !ok {
-			v.add("%s: unknown attachment %q", row, r.Attachment)
+			v.at(row, "attachment", "unknown attachment %q", r.Attachment)
 		}
 	}
 	if from, to := r.years(); from > to {
-		v.add("%s: years run backwards: %d to %d", row, r.YearFrom, r.YearTo)
+		v.at(row, "years", "years run backwards: %d to %d", r.YearFrom, r.YearTo)
 	}
 	if r.Construction == "" {
 		return
 	}
 	if !info.ByConstruction {
-		v.add("%s: %s does not depend on construction, leave %q out", row, r.Property, r.Construction)
+		v.at(row, "construction", "%s does not depend on construction, leave %q out", r.Property, r.Construction)
 	} else if _, ok := building.WordIndex(info.ConstructionField, r.Construction); !ok {
-		v.add("%s: unknown word %q for %s", row, r.Construction, info.ConstructionField)
+		v.at(row, "construction", "unknown word %q for %s", r.Construction, info.ConstructionField)
 	}
 }
 

@@ -252,7 +252,7 @@ func TestHashTakesInEverything(t *testing.T) {
 
 func TestParseReportsFileAndLine(t *testing.T) {
 	files := fstest.MapFS{}
-	for _, name := range []string{"materials", "buildups", "uses", "rules", "carriers", "measures", "economics"} {
+	for _, name := range []string{"materials", "buildups", "uses", "rules", "carriers", "measures", "economics", "surveys"} {
 		data, err := starterFiles.ReadFile("starter/" + name + ".csv")
 		if err != nil {
 			t.Fatal(err)
@@ -268,7 +268,7 @@ func TestParseReportsFileAndLine(t *testing.T) {
 		{"economics.csv", "EUR", "EUR,1", "table economics.csv"},
 		{"rules.csv", ",1918,", ",soon,", `"soon" is not a year`},
 		{"uses.csv", "\nschool,", "\nscool,", `unknown use "scool"`},
-		{"measures.csv", "spf=3", "spf", `target "spf"`},
+		{"measures.csv", "spf=3 ", "spf ", `target "spf`},
 		{"buildups.csv", ",lime plaster,", ",lime,", `unknown material "lime"`},
 		{"buildups.csv", ",wall,,", ",wall,perhaps,", `"perhaps" is neither yes nor no`},
 	} {

@@ -130,6 +130,9 @@ func parseNumber(text string) (float64, error) {
 	return x, nil
 }
 
+// TerrainWords lists the words of the terrains.
+func TerrainWords() []string { return slices.Clone(terrainWords[:]) }
+
 // ParseTerrain returns the terrain of a word, whatever its case.
 func ParseTerrain(word string) (Terrain, bool) {
 	i := slices.Index(terrainWords[:], strings.ToLower(strings.TrimSpace(word)))

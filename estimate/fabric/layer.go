@@ -19,6 +19,7 @@ type Layer struct {
 	ResistanceM2KW        float64 // declared resistance; 0 where it follows from d and lambda
 	BridgeShare           float64 // area share of the second material (studs, rafters, mortar)
 	BridgeConductivityWMK float64
+	BridgeName            string  // of the second material; "" where it has none
 	Gaps                  Gaps    // air gaps through insulation
 	Fixings               Fixings // metal through insulation
 }

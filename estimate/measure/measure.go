@@ -113,7 +113,7 @@ func (m *Measure) Apply(s *state.State, f *Facts, into *state.State) (Effect, st
 
 // Cost returns what a quantity of the measure costs.
 func (m *Measure) Cost(quantity float64) float64 {
-	return m.Terms.FixedCost + m.Terms.UnitCost*quantity
+	return m.Terms.Cost(quantity)
 }
 
 // Companion gives a state the mechanical outdoor air it lacks: extract fans

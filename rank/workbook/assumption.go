@@ -183,10 +183,10 @@ func (b *book) allMeasures() []*measureTerms {
 }
 
 func (b *book) measureTable(s *sheetBuilder) {
-	const from, to = 7, sourceColumn - 2 // of how far it goes
+	const from, to = 9, sourceColumn - 1 // of how far it goes
 	s.heading("Retrofit measures: what they cost and how far they go", sourceColumn)
 	s.heads(from, "Measure", "Counted in", "Fixed cost per building ("+b.currency()+")", "Cost per unit ("+b.currency()+")",
-		"Life (years)", "Upkeep (share of cost per year)", "How far it goes", "", "", "Source")
+		"Life (years)", "Upkeep (share of cost per year)", "Units beyond which they get cheaper", "by (units / that) to the minus", "How far it goes", "", "Source")
 	for _, m := range b.allMeasures() {
 		far := describeTargets(m.Target)
 		s.next(heightOf(9, wrappedText{m.Source, noteWidth(to + 1)}, wrappedText{far, assumptionWidth * (to - from + 1)}))
@@ -196,6 +196,10 @@ func (b *book) measureTable(s *sheetBuilder) {
 		s.input(4, two, m.UnitCost, m.unit)
 		s.input(5, plain, m.LifeYears, m.life)
 		s.input(6, "0.0 %", m.UpkeepShare, m.upkeep)
+		if m.SizeExponent != 0 {
+			s.input(7, plain, m.SizeFrom, m.from)
+			s.input(8, two, m.SizeExponent, m.exponent)
+		}
 		s.merged(from, to, far)
 		s.note(to+1, m.Source)
 	}

@@ -24,6 +24,7 @@ type measureTerms struct {
 	*archetype.Measure
 	slug                      string
 	fixed, unit, life, upkeep string // names
+	from, exponent            string // names, of the economies of size
 	levelName                 string // name of the present value of 1 a year
 	level                     float64
 	pvName                    map[string]string  // by carrier word: present value of 1 a year, growing
@@ -81,6 +82,7 @@ func (t *terms) newMeasure(a *archetype.Measure, names namer) *measureTerms {
 	m := &measureTerms{Measure: a, slug: slug(a.Key), pvName: map[string]string{}, pv: map[string]float64{}}
 	m.fixed, m.unit = names.defined("cost", m.slug, "fixed"), names.defined("cost", m.slug, "unit")
 	m.life, m.upkeep = names.defined("life", m.slug), names.defined("upkeep", m.slug)
+	m.from, m.exponent = names.defined("size", m.slug, "from"), names.defined("size", m.slug, "exponent")
 	m.levelName = names.defined("pv_level", m.slug)
 	m.level = finance.PresentValueFactor(t.rate, 0, a.LifeYears)
 	for _, c := range t.carriers {
@@ -131,9 +133,9 @@ func (t *terms) workOf(b *result.Building, m *result.Measure) work {
 // fusing a product and a sum, which a spreadsheet does not do.
 func (t *terms) amounts(m *measureTerms, w *work) (a amounts) {
 	power := t.byWord[electricity]
-	a.own = m.FixedCost + float64(m.UnitCost*w.quantity)
+	a.own = m.Cost(w.quantity)
 	if w.companion > 0 {
-		a.vent = t.companion.FixedCost + float64(t.companion.UnitCost*w.companion)
+		a.vent = t.companion.Cost(w.companion)
 	}
 	a.cost = a.own + a.vent
 	a.upkeep = float64(a.own*m.UpkeepShare) + float64(a.vent*t.companion.UpkeepShare)
@@ -175,10 +177,19 @@ type formulas struct {
 	money, npv                               map[[2]string]string // by carrier before and after
 }
 
+// costFormula is the formula of archetype.Measure.Cost.
+func (m *measureTerms) costFormula(quantity string) string {
+	f := m.fixed + "+" + m.unit + "*" + quantity
+	if m.SizeExponent == 0 {
+		return f
+	}
+	return f + "*IF(" + quantity + ">" + m.from + ",(" + quantity + "/" + m.from + ")^-" + m.exponent + ",1)"
+}
+
 func (t *terms) formulas(m *measureTerms, c *cells) *formulas {
 	f := &formulas{
-		own:     m.fixed + "+" + m.unit + "*" + c.quantity,
-		vent:    t.companion.fixed + "+" + t.companion.unit + "*" + c.companion,
+		own:     escape(m.costFormula(c.quantity)),
+		vent:    escape(t.companion.costFormula(c.companion)),
 		cost:    c.own + "+" + c.vent,
 		upkeep:  c.own + "*" + m.upkeep + "+" + c.vent + "*" + t.companion.upkeep,
 		payback: escape("IF(" + c.money + "<=" + c.upkeep + `,"never",` + c.cost + "/(" + c.money + "-" + c.upkeep + "))"),

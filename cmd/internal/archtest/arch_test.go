@@ -72,6 +72,7 @@ var may = []struct {
 	{"estimate/archetype", []string{"estimate/building", "estimate/climate", "estimate/fabric"}},
 	{"estimate/measure", []string{"estimate/archetype", "estimate/building", "estimate/caution", "estimate/fabric", "estimate/result", "estimate/state"}},
 	{"estimate", []string{"estimate/..."}},
+	{"ingest/assumption", []string{"ingest/finding", "ingest/sheet", "estimate/archetype", "estimate/building", "estimate/climate", "estimate/fabric"}},
 	{"ingest/...", []string{"ingest/...", "ingest", "estimate/building"}},
 	{"ingest", []string{"ingest/...", "estimate/building"}},
 	{"rank/...", []string{"rank", "rank/...", "ingest/finding", "estimate/archetype", "estimate/building", "estimate/caution", "estimate/climate", "estimate/fabric", "estimate/finance", "estimate/measure", "estimate/result", "estimate/state"}},
