@@ -104,7 +104,7 @@ func conflict(id string, k *building.Known, records []building.Record) (finding.
 	var others []building.Record // that differ, with this field alone
 	for i := range records {
 		r := &records[i]
-		if r.Sheet == nil || r.Sheet.File == k.Sheet.File || mends(k.Sheet.File, r.Sheet.File) {
+		if r.Sheet == nil || r.Sheet.File == k.Sheet.File || Mends(k.Sheet.File, r.Sheet.File) {
 			continue
 		}
 		v := valueOf(r, k.Field)
@@ -156,8 +156,8 @@ func valueOf(r *building.Record, f building.Field) (found *building.Value) {
 	return found
 }
 
-// mends reports whether a file holds mended rows of another.
-func mends(file, source string) bool {
+// Mends reports whether a file holds mended rows of another.
+func Mends(file, source string) bool {
 	stem := func(s string) string { return strings.TrimSuffix(s, filepath.Ext(s)) }
 	of, mended := strings.CutSuffix(stem(file), "-to-fix")
 	return mended && strings.EqualFold(filepath.Base(of), filepath.Base(stem(source)))

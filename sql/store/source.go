@@ -106,6 +106,15 @@ func (l *Load) register(ctx context.Context, f File) ([]Source, error) {
 	return replaced, err
 }
 
+// Sources lists the files that count at this point of the load, by name.
+func (l *Load) Sources(ctx context.Context) ([]Source, error) {
+	if err := l.settle(ctx); err != nil {
+		return nil, err
+	}
+	all, err := sources(ctx, l.tx, l.portfolio)
+	return slices.DeleteFunc(all, func(s Source) bool { return s.by != 0 }), err
+}
+
 // Keep lets a source count on whose place the one registered last has taken.
 func (l *Load) Keep(ctx context.Context, old int64) error {
 	if err := l.settle(ctx); err != nil {

@@ -53,10 +53,13 @@ type loadFlags struct {
 
 func (l *loadFlags) add(c *cobra.Command) {
 	c.Flags().StringVar(&l.columns, "columns", "", "`file` that says which column is what (see: kelvinrow inspect --columns-out)")
-	c.Flags().StringVar(&l.kind, "kind", "registered", "how firm the files' values are: registered, certified, metered or surveyed")
+	c.Flags().StringVar(&l.kind, "kind", "", "how firm the files' values are: registered, certified, metered or surveyed (default registered; rows to fix, as their source)")
 }
 
 func (l *loadFlags) options(files []string) (pipeline.LoadOptions, error) {
+	if l.kind == "" {
+		return pipeline.LoadOptions{Files: files, Columns: l.columns}, nil
+	}
 	kind, ok := building.KindByWord(l.kind)
 	if !ok || kind == building.Default {
 		return pipeline.LoadOptions{}, usagef("--kind %s: use registered, certified, metered or surveyed", l.kind)

@@ -9,10 +9,12 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"strings"
 	"time"
 
 	"kelvinrow/estimate/building"
 	"kelvinrow/ingest"
+	"kelvinrow/ingest/check"
 	"kelvinrow/ingest/finding"
 	"kelvinrow/ingest/header"
 	"kelvinrow/ingest/mend"
@@ -22,9 +24,9 @@ import (
 // LoadOptions says what to load.
 type LoadOptions struct {
 	Files   []string
-	Columns string // mapping file; "" for recognition alone
-	Kind    building.Kind
-	MendDir string // where *-to-fix files go; "" is beside each source
+	Columns string        // mapping file; "" for recognition alone
+	Kind    building.Kind // Default is what rows to fix had in their source, else Registered
+	MendDir string        // where *-to-fix files go; "" is beside each source
 }
 
 // errAlready says that the content of a file is in the store, read in this way.
@@ -123,6 +125,12 @@ func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, erro
 // readOne reads one file into the load; errAlready where there is nothing new.
 func (s *Session) readOne(ctx context.Context, l *store.Load, path string, read ingest.Options) (loaded, error) {
 	f := loaded{path: path, sheets: map[string]int64{}}
+	if read.Kind == building.Default && ingest.Mended(path) {
+		var err error
+		if read.Kind, err = sourceKind(ctx, l, read.Name); err != nil {
+			return f, err
+		}
+	}
 	sum, size, err := contentHash(path)
 	hashed := err == nil // where not, reading will say why
 	reading := ingest.Reading(read, read.Name)
@@ -166,6 +174,22 @@ func (s *Session) readOne(ctx context.Context, l *store.Load, path string, read 
 		f.report.Findings = append(f.report.Findings, replaced(old, source, w))
 	}
 	return f, nil
+}
+
+// sourceKind is how firm the values of the source of rows to fix are, Default
+// where it is not known: what was surveyed stays surveyed when it is mended.
+func sourceKind(ctx context.Context, l *store.Load, mended string) (building.Kind, error) {
+	all, err := l.Sources(ctx)
+	if err != nil {
+		return building.Default, err
+	}
+	for _, s := range all {
+		word, _, _ := strings.Cut(s.Reading, " ")
+		if k, ok := building.KindByWord(word); ok && check.Mends(mended, s.File) {
+			return k, nil
+		}
+	}
+	return building.Default, nil
 }
 
 // replaced says what taking an earlier version's place changed.

@@ -53,9 +53,6 @@ func (b *bench) write(name, text string) string {
 
 func (b *bench) load(opt LoadOptions) *LoadOutcome {
 	b.t.Helper()
-	if opt.Kind == building.Default {
-		opt.Kind = building.Registered
-	}
 	out, err := b.s.Load(b.t.Context(), opt)
 	if err != nil {
 		b.t.Fatal(err)
@@ -126,6 +123,22 @@ func TestRowsMendedInTwoGoesAreAllKept(t *testing.T) {
 	b.files(b.write("r.csv", head+"A;school;1970;950;natural\n"))
 	if got := b.ids(); got != "A B C" {
 		t.Errorf("buildings %s after the source came again", got)
+	}
+}
+
+func TestMendedRowsAreAsFirmAsTheirSource(t *testing.T) {
+	t.Parallel()
+	b := newBench(t)
+	b.load(LoadOptions{Files: []string{b.write("r.csv", head+"A;school;1970;900;natural\nB;school;1970;-900;natural\n")}, Kind: building.Surveyed})
+	b.files(b.write("r-to-fix.csv", head+"B;school;1970;900;natural\n"))
+	if got := b.get("B", building.FloorArea).Kind; got != building.Surveyed {
+		t.Errorf("a mended row of a survey is %s", got)
+	}
+	b.files(b.write("s.csv", head+"C;school;1970;900;natural\n"), b.write("t-to-fix.csv", head+"D;school;1970;900;natural\n"))
+	for _, id := range []string{"C", "D"} {
+		if got := b.get(id, building.FloorArea).Kind; got != building.Registered {
+			t.Errorf("%s is %s", id, got)
+		}
 	}
 }
 
