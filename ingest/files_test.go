@@ -135,7 +135,7 @@ func TestLinesOfAColumnFileThatPointAtNothing(t *testing.T) {
 		{"id = A\nuse = use\nstoreys = E\n", ""}, // E has no header and will do
 		{"storeys = ZZ\n", `warning columns.txt 1 storeys is to come from "ZZ", and no sheet read has such a column`},
 		{"# remark\nname = Bezeichnung\n", `warning columns.txt 2 name is to come from "Bezeichnung", and no sheet read has such a column`},
-		{"[register.csv \"Shet1\"]\nuse = B\n", `warning columns.txt 1 the section is about sheet "Shet1", and register.csv has only ""`},
+		{"[register.csv \"Shet1\"]\nuse = B\n", `warning columns.txt 1 the section is about sheet "Shet1", and register.csv has no sheets with names`},
 		{"[other.csv]\nuse = B\n", "note columns.txt 1 the section is about other.csv, which is not among the files given"},
 		{"use = C\n[register.csv]\nuse = B\n", ""}, // the later line counts
 		{"heating_system = none\nexposure = constant:exposed\n", ""},

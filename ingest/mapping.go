@@ -97,7 +97,7 @@ func UnusedMapping(m *header.Mapping, reports []*Report, known []string) []findi
 		}
 		var files, sheets []string
 		used := map[int]bool{}
-		hit, read := false, false
+		hit, read, anySheet := false, false, false
 		for _, r := range reports {
 			if !s.About(r.File) {
 				continue
@@ -105,7 +105,10 @@ func UnusedMapping(m *header.Mapping, reports []*Report, known []string) []findi
 			files = append(files, r.File)
 			for i := range r.Sheets {
 				sh := &r.Sheets[i]
-				sheets = append(sheets, fmt.Sprintf("%q", sh.Name))
+				anySheet = true
+				if sh.Name != "" {
+					sheets = append(sheets, fmt.Sprintf("%q", sh.Name))
+				}
 				if s.Sheet != "" && !strings.EqualFold(s.Sheet, sh.Name) {
 					continue
 				}
@@ -120,8 +123,12 @@ func UnusedMapping(m *header.Mapping, reports []*Report, known []string) []findi
 		case len(files) == 0 && s.File != "":
 			say(finding.Note, s.Line, "", fmt.Sprintf("the section is about %s, which is not among the files given", s.File), "")
 			continue
-		case !hit && s.Sheet != "" && len(sheets) > 0:
-			say(finding.Warning, s.Line, "", fmt.Sprintf("the section is about sheet %q, and %s has only %s", s.Sheet, strings.Join(files, ", "), strings.Join(sheets, ", ")), "correct the sheet's name")
+		case !hit && s.Sheet != "" && anySheet:
+			has := "has only " + strings.Join(sheets, ", ")
+			if len(sheets) == 0 {
+				has = "has no sheets with names"
+			}
+			say(finding.Warning, s.Line, "", fmt.Sprintf("the section is about sheet %q, and %s %s", s.Sheet, strings.Join(files, ", "), has), "correct the sheet's name")
 			continue
 		case !hit || !read:
 			continue // files that could not be read say so themselves

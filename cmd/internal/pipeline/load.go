@@ -9,6 +9,7 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 	"time"
 
@@ -87,7 +88,11 @@ func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, erro
 	var all []loaded
 	var known []string
 	s.Progress.Stage("reading", len(files))
-	for i, name := range ingest.Names(files) {
+	names, err := s.names(ctx, l, files)
+	if err != nil {
+		return nil, err
+	}
+	for i, name := range names {
 		read.Name = name
 		f, err := s.readOne(ctx, l, files[i], read)
 		if errors.Is(err, errAlready) {
@@ -120,6 +125,28 @@ func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, erro
 	finding.Sort(out.Findings)
 	s.Progress.Done()
 	return out, nil
+}
+
+// names are the names by which the files are known: those they were loaded by
+// from the same place before, or what tells them apart now.
+func (s *Session) names(ctx context.Context, l *store.Load, files []string) ([]string, error) {
+	names := ingest.Names(files)
+	known, err := l.Sources(ctx)
+	if err != nil {
+		return nil, err
+	}
+	for i, f := range files {
+		path, err := filepath.Abs(f)
+		if err != nil {
+			return nil, err
+		}
+		for _, k := range known {
+			if k.Path == path && !slices.Contains(names, k.File) {
+				names[i] = k.File
+			}
+		}
+	}
+	return names, nil
 }
 
 // readOne reads one file into the load; errAlready where there is nothing new.

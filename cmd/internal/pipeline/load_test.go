@@ -187,6 +187,9 @@ func TestFilesOfOneNameInOneCommand(t *testing.T) {
 	if got := b.get("S", building.FloorArea).Number; b.ids() != "N S" || got != 950 || len(said(out, finding.Replaced)) != 1 {
 		t.Errorf("buildings %s, area %v, %v", b.ids(), got, out.Findings)
 	}
+	if out.Reports[0].File != "south/r.csv" {
+		t.Errorf("known as %s now", out.Reports[0].File)
+	}
 }
 
 func TestOptionsOfReadingAreNotIgnored(t *testing.T) {
