@@ -27,7 +27,7 @@ func own(path string, book sheet.Book) bool {
 		return true
 	}
 	creator, description := properties(path)
-	return strings.HasPrefix(creator, "kelvinrow") && strings.HasPrefix(description, "Run ")
+	return strings.HasPrefix(creator, "kelvinrow") && (strings.HasPrefix(description, "Run ") || strings.HasPrefix(description, "Assumptions"))
 }
 
 // properties reads who made a workbook and what for; "" where it does not say.

@@ -60,7 +60,7 @@ func ReadFile(ctx context.Context, path string, opt Options, sink Sink) (*Report
 	if own(path, book) {
 		r.Own = true
 		r.Findings = append(r.Findings, finding.Finding{Severity: finding.Note, Check: finding.OwnWorkbook, File: r.File,
-			Text: "the file is a ranked workbook of this program and is not read: its defaults would come back as if they were known", Fix: "give the spreadsheets that it was made from"})
+			Text: "the file is a workbook that this program wrote, of results or of assumptions, and is not read: defaults would come back as if they were known", Fix: "give the spreadsheets that it was made from"})
 		return r, nil
 	}
 	r.Date, r.dateFrom = fileDate(filepath.Base(path), book.Modified(), content.Changed)

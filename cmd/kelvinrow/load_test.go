@@ -21,7 +21,7 @@ func TestRankedWorkbookIsNoSource(t *testing.T) {
 	before := u.explain("A-1")
 	for _, given := range []string{".", "*.xlsx"} {
 		status, out := u.run("load", given)
-		if want := map[string]int{".": 0, "*.xlsx": 1}[given]; status != want || !strings.Contains(out, "ranked.xlsx: the file is a ranked workbook of this program") {
+		if want := map[string]int{".": 0, "*.xlsx": 1}[given]; status != want || !strings.Contains(out, "ranked.xlsx: the file is a workbook that this program wrote") {
 			t.Errorf("load %s: %d, %s", given, status, out)
 		}
 	}

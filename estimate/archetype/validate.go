@@ -36,8 +36,8 @@ func (s *Set) Validate() error {
 }
 
 // Problem is one thing wrong with a set, and where: Table is one of the names of
-// tables below, "" for what is wrong with several; Key names the row (of layers: the
-// build-up, with Layer counted from 1); What is the quantity, "" for the whole row.
+// tables below; Key names the row, "" for the whole table (of layers: the build-up,
+// with Layer counted from 1); What is the quantity, "" for the whole row.
 type Problem struct {
 	Table, Key string
 	Layer      int
@@ -73,9 +73,9 @@ type place struct {
 
 func (p place) String() string { return p.text }
 
-// add reports what is wrong with several rows, or with a whole table.
-func (v *validator) add(format string, args ...any) {
-	v.problems = append(v.problems, &Problem{Text: fmt.Sprintf(format, args...)})
+// add reports what is wrong with several rows of a table, or with the whole of it.
+func (v *validator) add(table, format string, args ...any) {
+	v.problems = append(v.problems, &Problem{Table: table, Text: fmt.Sprintf(format, args...)})
 }
 
 // at reports what is wrong with one row.
@@ -217,7 +217,7 @@ func (v *validator) carriers() {
 	}
 	for _, w := range words {
 		if !seen[w] {
-			v.add("carrier %q: missing from the carriers table", w)
+			v.add(CarriersTable, "carrier %q: missing from the carriers table", w)
 		}
 	}
 }
@@ -290,7 +290,7 @@ func (v *validator) surveys() {
 	}
 	for _, g := range SurveyGroups {
 		if !seen[g] {
-			v.add("survey of %q: missing from the survey costs", g)
+			v.add(SurveyTable, "survey of %q: missing from the survey costs", g)
 		}
 	}
 }
@@ -387,7 +387,7 @@ func (v *validator) contradictions() {
 			for _, ib := range same[i+1:] {
 				a, b := &v.set.Rules[ia], &v.set.Rules[ib]
 				if overlap(a, b) && compareSpecificity(a, b) == 0 && !sameAnswer(a, b) {
-					v.add("rules %q and %q are equally specific, overlap and disagree on %s: %s against %s",
+					v.add(RulesTable, "rules %q and %q are equally specific, overlap and disagree on %s: %s against %s",
 						a.ID, b.ID, info.Property, a.answer(), b.answer())
 				}
 			}
@@ -431,7 +431,7 @@ func (v *validator) holes() {
 	}
 	for _, info := range propertyCatalogue {
 		if len(rows[info.Property]) == 0 {
-			v.add("no rule gives %s", info.Property)
+			v.add(RulesTable, "no rule gives %s", info.Property)
 			continue
 		}
 		t := newPropertyTable(v.set.Rules, rows[info.Property])
@@ -459,9 +459,9 @@ func (v *validator) holes() {
 		}
 		switch {
 		case more > 0:
-			v.add("%s, nor for %d more combinations", first, more)
+			v.add(RulesTable, "%s, nor for %d more combinations", first, more)
 		case first != "":
-			v.add("%s", first)
+			v.add(RulesTable, "%s", first)
 		}
 	}
 }

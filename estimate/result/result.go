@@ -92,4 +92,5 @@ type Run struct {
 	Buildings   int
 	Failed      int
 	Files       []string // source files in the store at that time
+	Options     string   // what else decides the workbook, as JSON
 }

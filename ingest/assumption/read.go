@@ -39,6 +39,10 @@ func Read(ctx context.Context, path string) (*archetype.Set, []finding.Finding, 
 	if err := ctx.Err(); err != nil {
 		return nil, nil, err
 	}
+	if r.broken {
+		// Without sheets and columns the cells tell nothing.
+		r.findings = slices.DeleteFunc(r.findings, func(f finding.Finding) bool { return f.Check != layoutCheck })
+	}
 	if len(r.findings) > 0 {
 		finding.Sort(r.findings)
 		return nil, r.findings, ErrRefused
@@ -46,11 +50,23 @@ func Read(ctx context.Context, path string) (*archetype.Set, []finding.Finding, 
 	return set, nil, nil
 }
 
+// layoutCheck marks what is said of sheets and headers.
+const layoutCheck = "assumption-layout"
+
+// missing says that the workbook lacks a sheet or a header.
+func (r *reader) missing(sheetName string, row int, text, fix string) {
+	r.say(sheetName, row, "", "", text, fix)
+	r.findings[len(r.findings)-1].Check = layoutCheck
+	r.broken = true
+}
+
 type reader struct {
 	ctx      context.Context
 	book     sheet.Book
 	file     string
 	findings []finding.Finding
+	cells    int  // findings about cells, before the checks of the set
+	broken   bool // a sheet or a column is missing
 	// places of the rows of the set's tables, by table and key
 	places map[string]map[string]placed
 }
@@ -81,7 +97,7 @@ type read[T any] struct {
 func readTable[T any](r *reader, t *table[T]) (out read[T]) {
 	i := slices.IndexFunc(r.book.Sheets(), func(s sheet.Info) bool { return strings.EqualFold(strings.TrimSpace(s.Name), t.sheet) })
 	if i < 0 {
-		r.say(t.sheet, 0, "", "", "the sheet is missing", "leave every sheet in the workbook")
+		r.missing(t.sheet, 0, "the sheet is missing", "leave every sheet in the workbook")
 		return out
 	}
 	if _, err := r.book.Verify(r.ctx, i, func(*sheet.Row) {}); err != nil {
@@ -105,7 +121,7 @@ func readTable[T any](r *reader, t *table[T]) (out read[T]) {
 		r.say(t.sheet, 0, "", "", err.Error(), "")
 	}
 	if !headed {
-		r.say(t.sheet, 0, "", "", fmt.Sprintf("no row is headed %q", t.columns[0].head), "leave the headers as they were written")
+		r.missing(t.sheet, 0, fmt.Sprintf("no row is headed %q", t.columns[0].head), "leave the headers as they were written")
 	}
 	return out
 }
@@ -124,7 +140,7 @@ func matchHeads[T any](r *reader, t *table[T], row *sheet.Row, where []int) []st
 			continue
 		}
 		if c.head != "Notes" {
-			r.say(t.sheet, row.Number, "", "", fmt.Sprintf("no column is headed %q", c.head), "leave the headers as they were written")
+			r.missing(t.sheet, row.Number, fmt.Sprintf("no column is headed %q", c.head), "leave the headers as they were written")
 		}
 	}
 	return letters
@@ -201,10 +217,11 @@ func (r *reader) set() *archetype.Set {
 	place(r, archetype.SurveyTable, &surveysTable, &surveys, func(c *archetype.SurveyCost) string { return c.Group })
 	s.Surveys = surveys.rows
 	r.climates(s)
-	if r.ctx.Err() != nil {
-		return s
+	if r.ctx.Err() != nil || r.broken {
+		return s // what is missing would be complained of a thousand times
 	}
 	s.Index()
+	r.cells = len(r.findings)
 	r.problems(s.Validate())
 	return s
 }
@@ -364,7 +381,7 @@ func (r *reader) problems(err error) {
 			name, key = detailsTable.sheet, p.Key+"\x00"+target
 		}
 		at, ok := r.places[name][key]
-		if !ok {
+		if !ok || key == "" && name != archetype.EconomicsTable {
 			r.say(sheetOf(p.Table), 0, "", "", p.Text, "")
 			continue
 		}
@@ -377,8 +394,15 @@ func (r *reader) problems(err error) {
 		} else if k := at.column(p.What); k >= 0 {
 			column = at.letters[k]
 		}
-		r.say(at.sheet, row, column, "", p.Text, "")
+		if !r.said(at.sheet, row) { // a cell that cannot be read is enough of a row
+			r.say(at.sheet, row, column, "", p.Text, "")
+		}
 	}
+}
+
+// said reports whether a row's cells have been complained of.
+func (r *reader) said(sheetName string, row int) bool {
+	return slices.ContainsFunc(r.findings[:r.cells], func(f finding.Finding) bool { return f.Sheet == sheetName && f.Row == row })
 }
 
 func sheetOf(table string) string {

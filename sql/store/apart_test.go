@@ -71,7 +71,7 @@ func TestPortfoliosAreKeptApart(t *testing.T) {
 	load(t, held, "c", "c.csv", 3, area("C", 2, 300))
 	load(t, held, "c", "c.csv", 4, area("C", 2, 301)) // replaces, through the cascade
 	want(t, all(t, held, "c"), map[string]float64{"C": 301})
-	must(t, held.SaveRun(t.Context(), filledRun("c", 1), []result.Building{filledBuilding("C", 1)}, nil))
+	must(t, held.SaveRun(t.Context(), filledRun("c", 1), nil, []result.Building{filledBuilding("C", 1)}, nil))
 	tx, err := held.begin(t.Context(), "c", false)
 	must(t, err)
 	defer func() { _ = tx.Rollback(context.Background()) }() // its last statement failed
@@ -111,7 +111,7 @@ func TestAccountsWithoutAPortfolioSeeNone(t *testing.T) {
 	want(t, all(t, reader, "a"), map[string]float64{"A": 100}) // and still works after that
 	loader := account(t, s, url, "kelvinrow_loader")
 	load(t, loader, "a", "b.csv", 2, area("B", 2, 200))
-	if err := loader.SaveRun(t.Context(), filledRun("a", 1), nil, nil); !denied(err) {
+	if err := loader.SaveRun(t.Context(), filledRun("a", 1), nil, nil, nil); !denied(err) {
 		t.Errorf("a loader stores a run: %v", err)
 	}
 }

@@ -110,7 +110,7 @@ func BenchmarkSaveRun(b *testing.B) {
 			buildings := benchmarkBuildings(n, len(run.Measures))
 			b.ResetTimer()
 			for range b.N {
-				must(b, s.SaveRun(context.Background(), run, buildings, nil))
+				must(b, s.SaveRun(context.Background(), run, nil, buildings, nil))
 			}
 			b.StopTimer()
 			seconds := b.Elapsed().Seconds() / float64(b.N)
@@ -137,7 +137,7 @@ func BenchmarkReadRun(b *testing.B) {
 			s := setupBenchmark(b)
 			load(b, s, "p", "a.csv", 1, area("A", 2, 1))
 			run := &result.Run{Portfolio: "p", Measures: make([]string, 14), Buildings: n}
-			must(b, s.SaveRun(context.Background(), run, benchmarkBuildings(n, len(run.Measures)), nil))
+			must(b, s.SaveRun(context.Background(), run, nil, benchmarkBuildings(n, len(run.Measures)), nil))
 			b.ResetTimer()
 			for range b.N {
 				_, _, err := s.Run(context.Background(), "p", run.Number)

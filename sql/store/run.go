@@ -13,8 +13,9 @@ import (
 
 // SaveRun stores a run and gives it its number: the next of its portfolio. It is
 // there whole or not at all: publish, if not nil, is called when everything is
-// written and the number is known, and its error undoes the run.
-func (s *Store) SaveRun(ctx context.Context, run *result.Run, buildings []result.Building, publish func() error) error {
+// written and the number is known, and its error undoes the run. The assumptions it
+// rests on, if given, are kept with it.
+func (s *Store) SaveRun(ctx context.Context, run *result.Run, a *Assumptions, buildings []result.Building, publish func() error) error {
 	for i := range buildings {
 		if n := len(buildings[i].Measures); n != 0 && n != len(run.Measures) {
 			return fmt.Errorf("store a run: building %s has %d measures, the run %d", buildings[i].ID, n, len(run.Measures))
@@ -24,6 +25,11 @@ func (s *Store) SaveRun(ctx context.Context, run *result.Run, buildings []result
 	return s.within(ctx, run.Portfolio, false, func(tx pgx.Tx) error {
 		if err := s.saveRun(ctx, tx, run, buildings); err != nil {
 			return fmt.Errorf("store a run of portfolio %q: %w", run.Portfolio, err)
+		}
+		if a != nil {
+			if err := keepAssumptions(ctx, tx, run.Portfolio, a); err != nil {
+				return fmt.Errorf("store the assumptions of portfolio %q: %w", run.Portfolio, err)
+			}
 		}
 		if publish == nil {
 			return nil
@@ -38,11 +44,11 @@ func (s *Store) saveRun(ctx context.Context, tx pgx.Tx, run *result.Run, buildin
 	}
 	var number int
 	err := tx.QueryRow(ctx, `insert into kelvinrow.run
-		(portfolio, run, ran_at, version, climate, assumptions, inputs, yardstick, seed, measures, buildings, failed, files)
-		select $1, coalesce((select max(run) from kelvinrow.run where portfolio = $1), 0) + 1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12
+		(portfolio, run, ran_at, version, climate, assumptions, inputs, yardstick, seed, measures, buildings, failed, files, options)
+		select $1, coalesce((select max(run) from kelvinrow.run where portfolio = $1), 0) + 1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13
 		returning run`,
 		run.Portfolio, run.Time, run.Version, run.Climate, run.Assumptions, run.Inputs, run.Yardstick, run.Seed,
-		list(run.Measures), run.Buildings, run.Failed, list(run.Files)).Scan(&number)
+		list(run.Measures), run.Buildings, run.Failed, list(run.Files), run.Options).Scan(&number)
 	if err != nil {
 		return err
 	}
@@ -60,11 +66,11 @@ func list(s []string) []string {
 	return s
 }
 
-const runColumns = "portfolio, run, ran_at, version, climate, assumptions, inputs, yardstick, seed, measures, buildings, failed, files"
+const runColumns = "portfolio, run, ran_at, version, climate, assumptions, inputs, yardstick, seed, measures, buildings, failed, files, options"
 
 func scanRun(row pgx.CollectableRow) (r result.Run, err error) {
 	err = row.Scan(&r.Portfolio, &r.Number, &r.Time, &r.Version, &r.Climate, &r.Assumptions, &r.Inputs, &r.Yardstick,
-		&r.Seed, &r.Measures, &r.Buildings, &r.Failed, &r.Files)
+		&r.Seed, &r.Measures, &r.Buildings, &r.Failed, &r.Files, &r.Options)
 	r.Time = r.Time.UTC()
 	return r, err
 }

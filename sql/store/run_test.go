@@ -78,7 +78,7 @@ func TestRunComesBackExactly(t *testing.T) {
 	odd.Measures[2].SavingKWh = math.Copysign(0, -1)
 	nothing := result.Building{ID: "D", Measures: []result.Measure{{}, {Applies: true}, {}}}
 	stored := []result.Building{{ID: "A", Failed: "no size"}, full, odd, nothing}
-	must(t, s.SaveRun(t.Context(), run, stored, nil))
+	must(t, s.SaveRun(t.Context(), run, nil, stored, nil))
 	if run.Number != 1 {
 		t.Errorf("run %d, want 1", run.Number)
 	}
@@ -107,13 +107,13 @@ func TestRunIsThereWholeOrNotAtAll(t *testing.T) {
 	buildings := []result.Building{filledBuilding("A", 2)}
 	unpublished := errors.New("no workbook")
 	run := filledRun("p", 2)
-	if err := s.SaveRun(t.Context(), run, buildings, func() error { return unpublished }); !errors.Is(err, unpublished) {
+	if err := s.SaveRun(t.Context(), run, nil, buildings, func() error { return unpublished }); !errors.Is(err, unpublished) {
 		t.Errorf("a run that could not be published: %v", err)
 	}
-	if err := s.SaveRun(t.Context(), filledRun("p", 3), buildings, nil); err == nil || !strings.Contains(err.Error(), "building A has 2 measures, the run 3") {
+	if err := s.SaveRun(t.Context(), filledRun("p", 3), nil, buildings, nil); err == nil || !strings.Contains(err.Error(), "building A has 2 measures, the run 3") {
 		t.Errorf("measures that are not the run's: %v", err)
 	}
-	if err := s.SaveRun(t.Context(), filledRun("p", 2), append(buildings, buildings...), nil); err == nil {
+	if err := s.SaveRun(t.Context(), filledRun("p", 2), nil, append(buildings, buildings...), nil); err == nil {
 		t.Error("one building twice in a run")
 	}
 	runs, err := s.Runs(t.Context(), "p")
@@ -122,7 +122,7 @@ func TestRunIsThereWholeOrNotAtAll(t *testing.T) {
 		t.Errorf("runs after three failures: %+v", runs)
 	}
 	for want := 1; want <= 2; want++ {
-		must(t, s.SaveRun(t.Context(), run, buildings, nil))
+		must(t, s.SaveRun(t.Context(), run, nil, buildings, nil))
 		if run.Number != want {
 			t.Errorf("run %d, want %d", run.Number, want)
 		}
@@ -144,7 +144,7 @@ func TestRunIsStoredWhileALoadGoesOn(t *testing.T) {
 	defer l.Rollback()
 	ctx, cancel := context.WithTimeout(t.Context(), 20*time.Second)
 	defer cancel()
-	must(t, s.SaveRun(ctx, filledRun("p", 1), []result.Building{{ID: "A"}}, nil))
+	must(t, s.SaveRun(ctx, filledRun("p", 1), nil, []result.Building{{ID: "A"}}, nil))
 }
 
 func TestPrune(t *testing.T) {
@@ -153,7 +153,7 @@ func TestPrune(t *testing.T) {
 	for _, p := range []string{"p", "q"} {
 		load(t, s, p, "a.csv", 1, area("A", 2, 100))
 		for range 3 {
-			must(t, s.SaveRun(t.Context(), filledRun(p, 1), []result.Building{filledBuilding("A", 1)}, nil))
+			must(t, s.SaveRun(t.Context(), filledRun(p, 1), nil, []result.Building{filledBuilding("A", 1)}, nil))
 		}
 	}
 	numbers := func(portfolio string) (out []int) {
@@ -189,7 +189,7 @@ func TestEraseLeavesNothingOfABuilding(t *testing.T) {
 	s, _ := setup(t)
 	secret := building.Record{Building: "Secret-1", Row: 3, Values: []building.Value{{Field: building.Street, Kind: building.Registered, Text: "Hidden Lane 7"}}}
 	load(t, s, "p", "a.csv", 1, area("A", 2, 100), secret) // with a finding about row 3 of the sheet that names no building
-	must(t, s.SaveRun(t.Context(), filledRun("p", 1), []result.Building{filledBuilding("A", 1), filledBuilding("Secret-1", 1)}, nil))
+	must(t, s.SaveRun(t.Context(), filledRun("p", 1), nil, []result.Building{filledBuilding("A", 1), filledBuilding("Secret-1", 1)}, nil))
 	must(t, s.Erase(t.Context(), "p", "Secret-1"))
 	must2 := func(n int, err error) int { must(t, err); return n }
 	if n := must2(s.Count(t.Context(), "p")); n != 1 {

@@ -9,6 +9,7 @@ import (
 	"fmt"
 	"io"
 	"os"
+	"strings"
 	"syscall"
 
 	"github.com/spf13/cobra"
@@ -25,6 +26,9 @@ const (
 	statusUsage    = 2
 	statusSetAside = 3
 )
+
+// mostRefusals is how many faults of a workbook of assumptions are shown.
+const mostRefusals = 60
 
 // errSetAside ends a command that did its work while some rows were set aside.
 var errSetAside = errors.New("some rows were set aside")
@@ -48,6 +52,9 @@ type app struct {
 	climate   string
 	workers   int
 	quiet     bool
+
+	assumptions     string
+	prices, changes []string
 }
 
 // Run runs one command line and returns its exit status.
@@ -59,6 +66,7 @@ func Run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
 	root.SetErr(stderr)
 	err := root.ExecuteContext(ctx)
 	var usage usageError
+	var refused *pipeline.Refused
 	switch {
 	case err == nil:
 		return statusDone
@@ -66,6 +74,16 @@ func Run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
 		return statusSetAside
 	case errors.Is(err, syscall.EPIPE):
 		return statusFailed // whoever read the output has gone: nobody to tell
+	case errors.As(err, &refused):
+		for i, f := range refused.Findings {
+			if i == mostRefusals {
+				fmt.Fprintf(stderr, "  and %s more\n", count(len(refused.Findings)-i))
+				break
+			}
+			fmt.Fprintf(stderr, "  %s\n", f)
+		}
+		fmt.Fprintf(stderr, "kelvinrow: %v\n", err)
+		return statusFailed
 	case errors.As(err, &usage):
 		fmt.Fprintf(stderr, "kelvinrow: %v\n", err)
 		return statusUsage
@@ -103,7 +121,7 @@ heat balance, and ranks the buildings by what each retrofit measure saves.`,
 	f.Lookup("db").DefValue = ""
 	f.StringVar(&a.portfolio, "portfolio", "default", "`name` of the portfolio: keeps clients apart in one store")
 	f.BoolVarP(&a.quiet, "quiet", "q", false, "print nothing but errors and what was asked for")
-	root.AddCommand(a.demo(), a.screen(), a.inspect(), a.load(), a.rank(), a.explain(), a.runs(), a.storeCommand())
+	root.AddCommand(a.demo(), a.screen(), a.inspect(), a.load(), a.rank(), a.explain(), a.runs(), a.assumptionsCommand(), a.storeCommand())
 	return root
 }
 
@@ -120,8 +138,24 @@ func unknownCommand(c *cobra.Command, args []string) error {
 
 // estimateFlags adds the flags of commands that estimate.
 func (a *app) estimateFlags(c *cobra.Command) {
-	c.Flags().StringVar(&a.climate, "climate", "", "starter climate by `name`, or an .epw file (default the first starter climate)")
+	c.Flags().StringVar(&a.climate, "climate", "", "climate by `name`, or an .epw file (default that of the last run, or the first of the assumptions)")
+	c.Flags().StringVar(&a.assumptions, "assumptions", "", "`workbook` of assumptions (see: kelvinrow assumptions), the version of a run, or starter (default what the last run was given)")
+	c.Flags().StringArrayVar(&a.prices, "price", nil, "what if: `carrier=price` per kWh, such as gas=0.14; may be given several times")
+	c.Flags().StringArrayVar(&a.changes, "set", nil, "what if: `owner.quantity=number`, such as new-windows.unit_cost=700; may be given several times")
 	c.Flags().IntVar(&a.workers, "workers", 0, "buildings computed at the same time (default one per processor)")
+}
+
+// whatIf turns prices and changes into changes.
+func (a *app) whatIf() ([]string, error) {
+	var out []string
+	for _, p := range a.prices {
+		carrier, price, ok := strings.Cut(p, "=")
+		if !ok || strings.Contains(carrier, ".") {
+			return nil, usagef("--price %s: write CARRIER=PRICE, such as gas=0.14", p)
+		}
+		out = append(out, carrier+".price="+price)
+	}
+	return append(out, a.changes...), nil
 }
 
 // args wraps cobra's argument checks so that a wrong count is wrong usage.
@@ -137,8 +171,13 @@ func args(check cobra.PositionalArgs) cobra.PositionalArgs {
 // within runs f with the store open, and closes it whatever happens; the first
 // error counts.
 func (a *app) within(ctx context.Context, f func(*pipeline.Session) error) (err error) {
+	changes, err := a.whatIf()
+	if err != nil {
+		return err
+	}
 	s, err := pipeline.Open(ctx, pipeline.Config{
 		DB: a.db, Portfolio: a.portfolio, Climate: a.climate, Workers: a.workers,
+		Assumptions: a.assumptions, Changes: changes,
 		Progress: progress.New(a.err, a.quiet),
 	})
 	if err != nil {

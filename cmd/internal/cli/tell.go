@@ -146,7 +146,7 @@ func (a *app) tellRank(o *pipeline.RankOutcome) {
 		return
 	}
 	s := &o.Summary
-	fmt.Fprintf(a.out, "Buildings    %s estimated in climate %s", count(s.Buildings-s.Failed), o.Run.Climate)
+	fmt.Fprintf(a.out, "Buildings    %s estimated in climate %s, assumptions %s", count(s.Buildings-s.Failed), o.Run.Climate, o.Assumptions)
 	if s.Failed > 0 {
 		fmt.Fprintf(a.out, ", %s could not be (the sheet Buildings says why)", count(s.Failed))
 	}

@@ -286,12 +286,12 @@ func TestContradictionsAreSaidAtLoadAndInTheWorkbook(t *testing.T) {
 	if len(about.list) != 3 {
 		t.Errorf("ranking finds %v", about.list)
 	}
-	basis, err := b.s.basis()
+	rests, err := b.s.inForce(t.Context())
 	if err != nil {
 		t.Fatal(err)
 	}
 	w := newWatch()
-	if _, _, err := b.s.estimate(t.Context(), basis, w); err != nil || len(w.list) != 3 {
+	if _, _, err := b.s.estimate(t.Context(), rests.basis, w); err != nil || len(w.list) != 3 {
 		t.Errorf("estimating watches %v, %v", w.list, err)
 	}
 }

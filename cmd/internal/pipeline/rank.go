@@ -11,7 +11,6 @@ import (
 
 	"kelvinrow/estimate"
 	"kelvinrow/estimate/building"
-	"kelvinrow/estimate/climate"
 	"kelvinrow/estimate/result"
 	"kelvinrow/ingest/finding"
 	"kelvinrow/rank"
@@ -33,6 +32,8 @@ type RankOutcome struct {
 	Summary   rank.Summary
 	Basis     *estimate.Basis
 	Out       string
+
+	Assumptions string // where they came from
 }
 
 // Rank estimates all buildings of the portfolio, ranks them, stores the run and
@@ -41,7 +42,12 @@ type RankOutcome struct {
 // a command leaves neither. Findings are those
 // of the command itself; what earlier loads found comes from the store.
 func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.Finding) (*RankOutcome, error) {
-	basis, err := s.basis()
+	rests, err := s.inForce(ctx)
+	if err != nil {
+		return nil, err
+	}
+	basis := rests.basis
+	kept, err := rests.pack()
 	if err != nil {
 		return nil, err
 	}
@@ -90,7 +96,7 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 	defer func() { file.discard() }()
 	began = time.Now()
 	s.Progress.Stage("storing the run", 0)
-	err = s.Store.SaveRun(ctx, run, buildings, func() (err error) {
+	err = s.Store.SaveRun(ctx, run, kept, buildings, func() (err error) {
 		s.Timings.Save = time.Since(began)
 		s.Progress.Stage("writing "+filepath.Base(opt.Out), 0)
 		began = time.Now()
@@ -105,7 +111,7 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 		return nil, fmt.Errorf("run %d is stored, but its workbook cannot take its place: %w", run.Number, err)
 	}
 	s.Progress.Done()
-	return &RankOutcome{Run: run, Buildings: buildings, Summary: summary, Basis: basis, Out: opt.Out}, nil
+	return &RankOutcome{Run: run, Buildings: buildings, Summary: summary, Basis: basis, Assumptions: rests.name, Out: opt.Out}, nil
 }
 
 // estimate evaluates all buildings, hashes what they are made from, and looks
@@ -161,36 +167,31 @@ func union(stored, own []finding.Finding) []finding.Finding {
 	return stored
 }
 
-// Explain says everything about one building, in the climate of the portfolio's
-// last run unless another is named. It names that run if it rests on the same
-// climate and assumptions.
+// Explain says everything about one building, on the assumptions and in the climate
+// of the portfolio's last run unless others are named. It names the last run that
+// rests on the same.
 func (s *Session) Explain(ctx context.Context, id string) (*estimate.Explanation, error) {
 	b, _, err := s.Store.Building(ctx, s.Portfolio, id)
 	if err != nil {
 		return nil, err
 	}
-	runs, err := s.Store.Runs(ctx, s.Portfolio)
+	rests, err := s.inForce(ctx)
 	if err != nil {
 		return nil, err
 	}
-	var last result.Run
-	if len(runs) > 0 {
-		last = runs[len(runs)-1]
-		if _, err := climate.Find(last.Climate, nil); err == nil && s.Climate == "" {
-			s.Climate = last.Climate // one from a file must be named again
-		}
-	}
-	basis, err := s.basis()
-	if err != nil {
-		return nil, err
-	}
-	e, err := basis.Explain(b)
+	e, err := rests.basis.Explain(b)
 	if err != nil {
 		return nil, fmt.Errorf("explain %s: %w", id, err)
 	}
 	e.Portfolio = s.Portfolio
-	if last.Climate == e.Climate.Name && last.Assumptions == e.Assumptions {
-		e.Run = last.Number
+	runs, err := s.Store.Runs(ctx, s.Portfolio)
+	if err != nil {
+		return nil, err
+	}
+	for i := range runs {
+		if runs[i].Assumptions == e.Assumptions && runs[i].Version == e.Version {
+			e.Run = runs[i].Number
+		}
 	}
 	return e, nil
 }

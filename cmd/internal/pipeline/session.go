@@ -10,9 +10,6 @@ import (
 	"time"
 
 	"kelvinrow/cmd/internal/progress"
-	"kelvinrow/estimate"
-	"kelvinrow/estimate/archetype"
-	"kelvinrow/estimate/climate"
 	"kelvinrow/sql/cluster"
 	"kelvinrow/sql/store"
 )
@@ -22,9 +19,12 @@ type Config struct {
 	DB        string // Postgres URL; "" starts the private server
 	StoreDir  string // of the private server; "" is the usual place
 	Portfolio string
-	Climate   string // starter climate or EPW file; "" is the first starter
-	Workers   int    // 0 is one per processor
-	Progress  *progress.Progress
+	Climate   string // a climate's name or an EPW file; "" is that of the assumptions
+
+	Assumptions string   // workbook, stored version or "starter"; "" is what the last run was given
+	Changes     []string // single numbers changed, as archetype.Set.Override takes them
+	Workers     int      // 0 is one per processor
+	Progress    *progress.Progress
 }
 
 // Timings says how long each stage took.
@@ -84,28 +84,4 @@ func (s *Session) Close(ctx context.Context) error {
 		return fmt.Errorf("stop the private Postgres: %w", err)
 	}
 	return nil
-}
-
-// basis makes what estimates rest on.
-func (s *Session) basis() (*estimate.Basis, error) {
-	set, err := archetype.Starter()
-	if err != nil {
-		return nil, fmt.Errorf("starter rules: %w", err)
-	}
-	c, err := s.climate()
-	if err != nil {
-		return nil, err
-	}
-	return estimate.NewBasis(set, c)
-}
-
-func (s *Session) climate() (*climate.Climate, error) {
-	if s.Climate != "" {
-		return climate.Load(s.Climate)
-	}
-	starters, err := climate.Starter()
-	if err != nil {
-		return nil, err
-	}
-	return &starters[0], nil
 }

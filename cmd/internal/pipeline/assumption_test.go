@@ -1,0 +1,100 @@
+package pipeline
+
+import (
+	"errors"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+
+	"github.com/xuri/excelize/v2"
+
+	"kelvinrow/estimate/building"
+	"kelvinrow/rank"
+)
+
+// The workbook of assumptions, edited and given back, moves the run and stays in
+// force; single what-ifs do not; a broken one is refused whole.
+func TestAssumptionsStayInForce(t *testing.T) {
+	s := newBench(t).s
+	ctx := t.Context()
+	dir := t.TempDir()
+	source := filepath.Join(dir, "stock.csv")
+	if err := os.WriteFile(source, []byte("id;use;year built;floor area (m2)\nA-1;terraced house;1930;95\nA-2;school;1972;2400\n"), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	if _, err := s.Load(ctx, LoadOptions{Files: []string{source}, Kind: building.Registered}); err != nil {
+		t.Fatal(err)
+	}
+	must := func(err error) {
+		t.Helper()
+		if err != nil {
+			t.Fatal(err)
+		}
+	}
+	run := func(assumptions, climate string, changes ...string) *RankOutcome {
+		t.Helper()
+		s.Assumptions, s.Climate, s.Changes = assumptions, climate, changes
+		out, err := s.Rank(ctx, RankOptions{Out: filepath.Join(dir, "ranked.xlsx"), Yardstick: rank.Default}, nil)
+		if err != nil {
+			t.Fatal(err)
+		}
+		return out
+	}
+	first := run("", "")
+	if first.Assumptions != StarterName {
+		t.Errorf("the first run rests on %q", first.Assumptions)
+	}
+	dearer := run("", "", "gas.price=0.5")
+	if dearer.Run.Assumptions == first.Run.Assumptions || dearer.Summary.MoneyPerYear <= first.Summary.MoneyPerYear {
+		t.Error("a what-if changes nothing")
+	}
+	if dearer.Summary.NeedKWh != first.Summary.NeedKWh {
+		t.Error("a price moves the physics")
+	}
+	if again := run("", ""); again.Run.Assumptions != first.Run.Assumptions {
+		t.Error("a what-if stays in force")
+	}
+
+	book := filepath.Join(dir, "assumptions.xlsx")
+	s.Changes = nil
+	if _, version, err := s.WriteAssumptions(ctx, book); err != nil || version != first.Run.Assumptions {
+		t.Fatalf("%s, %v", version, err)
+	}
+	if back := run(book, ""); back.Run.Assumptions != first.Run.Assumptions {
+		t.Error("an unedited workbook is another version")
+	}
+	f, err := excelize.OpenFile(book)
+	must(err)
+	must(f.SetCellValue("Uses", "B4", 21))
+	must(f.Save())
+	warm := run(book, "")
+	if warm.Summary.NeedKWh == first.Summary.NeedKWh && warm.Run.Assumptions == first.Run.Assumptions {
+		t.Error("an edited workbook changes nothing")
+	}
+	if kept := run("", ""); kept.Run.Assumptions != warm.Run.Assumptions || kept.Assumptions != "assumptions.xlsx" {
+		t.Errorf("the edited workbook does not stay in force: %s, %q", kept.Run.Assumptions, kept.Assumptions)
+	}
+	if older := run(first.Run.Assumptions[:12], ""); older.Run.Assumptions != first.Run.Assumptions {
+		t.Error("a stored version comes back as another")
+	}
+	if own := run(StarterName, "Gullspindle"); own.Assumptions != StarterName {
+		t.Errorf("starter is %q", own.Assumptions)
+	}
+	e, err := s.Explain(ctx, "A-1")
+	if err != nil || e.Run != 8 {
+		t.Errorf("explain names run %d, %v", e.Run, err)
+	}
+
+	must(f.SetCellValue("Energy carriers", "B4", "cheap"))
+	must(f.Save())
+	s.Assumptions = book
+	var refused *Refused
+	if _, err := s.Rank(ctx, RankOptions{Out: filepath.Join(dir, "ranked.xlsx"), Yardstick: rank.Default}, nil); !errors.As(err, &refused) || len(refused.Findings) != 1 {
+		t.Errorf("a broken workbook: %v", err)
+	}
+	s.Assumptions, s.Changes = "", []string{"gas.price=-1"}
+	if _, err := s.Rank(ctx, RankOptions{Out: filepath.Join(dir, "ranked.xlsx"), Yardstick: rank.Default}, nil); err == nil || !strings.Contains(err.Error(), "price -1") {
+		t.Errorf("a negative price: %v", err)
+	}
+}
