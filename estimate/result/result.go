@@ -77,6 +77,27 @@ type Measure struct {
 	Cautions        Caution
 }
 
+// Package is several measures carried out together on one building, the balance made
+// again: savings of measures do not add up.
+type Package struct {
+	Set           uint64  // bit i is measure i of Run.Measures; 0 is to do nothing
+	Cost          float64 // investment, ventilation brought along included
+	UpkeepPerYear float64
+
+	NeedKWh           float64 // after it
+	CarrierAfter      string
+	HeatAfterKWh      float64 // delivered, in CarrierAfter
+	FansAfterKWh      float64
+	CompanionQuantity float64 // m3/h of ventilation it brings along; 0 = none
+
+	SavingKWh       float64 // delivered energy saved: heat and fans together
+	CO2Kg           float64
+	MoneyPerYear    float64
+	NPV             float64 // over the calculation period, replacements and residual values in it
+	UnderVentilated bool
+	Cautions        Caution
+}
+
 // Run is one numbered estimate of a portfolio.
 type Run struct {
 	Portfolio   string

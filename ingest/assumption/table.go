@@ -28,7 +28,6 @@ type table[T any] struct {
 	sheet   string
 	about   string // a line above the header
 	columns []column[T]
-	widths  []float64
 }
 
 func text[T any](head string, width float64, at func(*T) *string) column[T] {
