@@ -21,6 +21,10 @@ type Basis struct {
 	Climate  *climate.Climate
 	Measures []measure.Measure
 
+	// Worth, if set, makes every estimate bring its packages, valued by it. It must
+	// be set before the first.
+	Worth Worth
+
 	companion *archetype.Measure
 	carriers  map[string]*archetype.Carrier
 }

@@ -2,6 +2,7 @@ package estimate
 
 import (
 	"math"
+	"sync"
 
 	"kelvinrow/estimate/airflow"
 	"kelvinrow/estimate/balance"
@@ -208,8 +209,16 @@ func (b *Basis) Evaluate(bl *building.Building) result.Building {
 		b.try(&b.Measures[i], m, &base, &after)
 		out.Measures[i] = after.result
 	}
+	if b.Worth != nil {
+		p := packers.Get().(*packer)
+		out.Packages = b.packages(p, m, &base, b.Worth)
+		packers.Put(p)
+	}
 	return out
 }
+
+// packers holds the memory packages are made in.
+var packers = sync.Pool{New: func() any { return new(packer) }}
 
 func identity(bl *building.Building) result.Building {
 	return result.Building{

@@ -48,6 +48,7 @@ type Building struct {
 
 	Cautions Caution
 	Measures []Measure // parallel to Run.Measures
+	Packages []Package // cheapest first, the first to do nothing; only where asked for, never stored
 }
 
 // Measure is what one measure does to one building.

@@ -35,7 +35,8 @@ type Input struct {
 	Climate   *climate.Climate
 	Top       int // rows per measure sheet; 0 is all
 	Yardstick rank.Yardstick
-	Title     string // "" makes one of the portfolio's name
+	Title     string     // "" makes one of the portfolio's name
+	Programme *Programme // nil without one
 }
 
 // book is a workbook being made.
@@ -168,11 +169,11 @@ func (b *book) make() (err error) {
 	if err != nil {
 		return err
 	}
-	for _, fixed := range []string{totalsSheet, issuesSheet, assumptionsSheet, rulesSheet, buildupsSheet, materialsSheet, methodSheet} {
+	for _, fixed := range []string{programmeSheet, chosenSheet, stairsSheet, totalsSheet, issuesSheet, assumptionsSheet, rulesSheet, buildupsSheet, materialsSheet, methodSheet} {
 		b.tabs.take(fixed)
 	}
 	steps := []func() error{
-		b.addBuildings, b.addMeasures, b.addTotals, b.addIssues,
+		b.addBuildings, b.addProgramme, b.addMeasures, b.addTotals, b.addIssues,
 		b.addAssumptions, b.addRules, b.addBuildups, b.addMaterials, b.addMethod,
 		func() error { return b.fillOverview(overview) },
 		b.properties,

@@ -32,7 +32,8 @@ type field struct {
 func fieldsOf(t reflect.Type) (fields []field) {
 	for i := range t.NumField() {
 		f := t.Field(i)
-		if f.Type != reflect.TypeFor[[]result.Measure]() {
+		// Measures have columns of their own; packages are made anew where wanted.
+		if f.Type != reflect.TypeFor[[]result.Measure]() && f.Type != reflect.TypeFor[[]result.Package]() {
 			fields = append(fields, field{i, f.Name, f.Type.Kind()})
 		}
 	}

@@ -19,12 +19,14 @@ type rankFlags struct {
 	out       string
 	yardstick string
 	top       int
+	programme programmeFlags
 }
 
 func (r *rankFlags) add(c *cobra.Command, out string) {
 	c.Flags().StringVarP(&r.out, "output", "o", out, "`file` for the ranked workbook")
 	c.Flags().StringVar(&r.yardstick, "by", "kwh", "what to rank by: kwh, co2, money, kwh-per-euro, npv or payback")
 	c.Flags().IntVar(&r.top, "top", 0, "rows per measure sheet (0 is all)")
+	r.programme.add(c)
 }
 
 func (r *rankFlags) options() (pipeline.RankOptions, error) {
@@ -42,7 +44,11 @@ func (r *rankFlags) options() (pipeline.RankOptions, error) {
 	if info, err := os.Stat(filepath.Dir(r.out)); err != nil || !info.IsDir() {
 		return pipeline.RankOptions{}, usagef("--output %s: there is no folder %s", r.out, filepath.Dir(r.out))
 	}
-	return pipeline.RankOptions{Out: r.out, Yardstick: y, Top: r.top}, nil
+	p, err := r.programme.options(y)
+	if err != nil {
+		return pipeline.RankOptions{}, err
+	}
+	return pipeline.RankOptions{Out: r.out, Yardstick: y, Top: r.top, Programme: p}, nil
 }
 
 // loadFlags are the flags of commands that read files.
@@ -162,7 +168,9 @@ that real ones have, and screens them. Input and output workbooks stay in DIR
 				a.portfolio = "demo"
 			}
 			err = a.runScreen(c, pipeline.LoadOptions{Files: files, Kind: building.Registered},
-				pipeline.RankOptions{Out: filepath.Join(dir, "ranked.xlsx"), Yardstick: rank.Default, Title: demo.Landlord}, showFlags{})
+				pipeline.RankOptions{Out: filepath.Join(dir, "ranked.xlsx"), Yardstick: rank.Default, Title: demo.Landlord,
+					// As much a year as the invented landlord has.
+					Programme: pipeline.ProgrammeOptions{Budgets: []float64{4e6, 4e6, 4e6}, By: rank.Energy}}, showFlags{})
 			if errors.Is(err, errSetAside) {
 				return nil // the demo's dirt is on purpose
 			}

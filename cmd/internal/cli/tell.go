@@ -15,6 +15,7 @@ import (
 	"kelvinrow/cmd/internal/pipeline"
 	"kelvinrow/estimate/state"
 	"kelvinrow/ingest/finding"
+	"kelvinrow/rank/workbook"
 )
 
 func today() string { return time.Now().Format("2006-01-02") }
@@ -179,12 +180,32 @@ func (a *app) tellRank(o *pipeline.RankOutcome) {
 			amount(m.SavingKWh, "Wh"), money(m.Cost, o.Basis.Set.Economics.Currency), best)
 	}
 	w.Flush()
+	if p := o.Programme; p != nil {
+		a.tellProgramme(p, o.Basis.Set.Economics.Currency)
+	}
 	path := o.Out
 	if abs, err := filepath.Abs(path); err == nil {
 		path = abs
 	}
 	fmt.Fprintf(a.out, "\nSavings of different measures on one building do not add up. The numbers are a\nscreening: cautions stand beside them in the workbook; local codes and licensed\npractice decide.\n")
 	fmt.Fprintf(a.out, "Run %d        %s\n", o.Run.Number, path)
+}
+
+func (a *app) tellProgramme(p *workbook.Programme, currency string) {
+	fmt.Fprintf(a.out, "\nProgramme    for the most %s; at most %.2g %% more is possible within the same limits\n", p.By.Words(), 100*p.Gap)
+	for y, budget := range p.Budgets {
+		n, cost, kwh, co2 := 0, 0.0, 0.0, 0.0
+		for i := range p.Chosen {
+			if c := &p.Chosen[i]; c.Year == y+1 {
+				n++
+				cost += c.Package.Cost
+				kwh += c.Package.SavingKWh
+				co2 += c.Package.CO2Kg
+			}
+		}
+		fmt.Fprintf(a.out, "  year %-6d %s buildings for %s of %s, saves %s/a and %s CO2/a\n", y+1, count(n), money(cost, currency), money(budget, currency),
+			amount(kwh, "Wh"), tonnes(co2))
+	}
 }
 
 func tonnes(kg float64) string { return fmt.Sprintf("%s t", count(int(kg/1000+0.5))) }

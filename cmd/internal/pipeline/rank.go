@@ -23,6 +23,7 @@ type RankOptions struct {
 	Yardstick rank.Yardstick
 	Top       int // rows per measure sheet; 0 is all
 	Title     string
+	Programme ProgrammeOptions
 }
 
 // RankOutcome is a finished run.
@@ -34,6 +35,7 @@ type RankOutcome struct {
 	Out       string
 
 	Assumptions string // where they came from
+	Programme   *workbook.Programme
 }
 
 // Rank estimates all buildings of the portfolio, ranks them, stores the run and
@@ -63,6 +65,9 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 	if run.Files, err = s.fileNames(ctx); err != nil {
 		return nil, err
 	}
+	if len(opt.Programme.Budgets) > 0 {
+		basis.Worth = worth(opt.Programme.By)
+	}
 	about := newWatch()
 	buildings, inputs, err := s.estimate(ctx, basis, about)
 	if err != nil {
@@ -83,6 +88,16 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 	summary := rank.Summarise(run, buildings)
 	s.Timings.Rank = time.Since(began)
 
+	var plan *workbook.Programme
+	if len(opt.Programme.Budgets) > 0 {
+		s.Progress.Stage("choosing the programme", 0)
+		began = time.Now()
+		if plan, err = decide(ctx, &opt.Programme, run.Measures, buildings, s.Workers); err != nil {
+			return nil, fmt.Errorf("programme: %w", err)
+		}
+		s.Timings.Rank += time.Since(began)
+	}
+
 	stored, err := s.Store.Findings(ctx, s.Portfolio)
 	if err != nil {
 		return nil, err
@@ -91,6 +106,7 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 	in := &workbook.Input{
 		Run: run, Buildings: buildings, Findings: union(append(stored, about.list...), findings), Set: basis.Set,
 		Climate: basis.Climate, Top: opt.Top, Yardstick: opt.Yardstick, Title: opt.Title,
+		Programme: plan,
 	}
 	var file *staged
 	defer func() { file.discard() }()
@@ -111,7 +127,7 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 		return nil, fmt.Errorf("run %d is stored, but its workbook cannot take its place: %w", run.Number, err)
 	}
 	s.Progress.Done()
-	return &RankOutcome{Run: run, Buildings: buildings, Summary: summary, Basis: basis, Assumptions: rests.name, Out: opt.Out}, nil
+	return &RankOutcome{Run: run, Buildings: buildings, Summary: summary, Basis: basis, Assumptions: rests.name, Programme: plan, Out: opt.Out}, nil
 }
 
 // estimate evaluates all buildings, hashes what they are made from, and looks
