@@ -10,6 +10,7 @@ import (
 	"kelvinrow/estimate/climate"
 	"kelvinrow/estimate/fabric"
 	"kelvinrow/estimate/moisture"
+	"kelvinrow/estimate/result"
 	"kelvinrow/estimate/state"
 )
 
@@ -45,6 +46,19 @@ func (b *Basis) Explain(bl *building.Building) (*Explanation, error) {
 		mm := &b.Measures[i]
 		b.try(mm, m, &base, &after)
 		e.Measures[i] = b.measureDoc(mm.Terms.Key, mm.Terms.Label, mm.Terms.Unit, &after)
+	}
+	var p packer
+	for _, k := range b.packages(&p, m, &base, func(k *result.Package) float64 { return k.SavingKWh }) {
+		d := PackageDoc{
+			Measures: []string{}, Cost: k.Cost, UpkeepPerYear: k.UpkeepPerYear, CompanionM3H: present(k.CompanionQuantity), NeedKWh: k.NeedKWh,
+			SavingKWh: k.SavingKWh, CO2Kg: k.CO2Kg, MoneyPerYear: k.MoneyPerYear, NPV: k.NPV, Cautions: texts(caution.Texts(k.Cautions)),
+		}
+		for i := range b.Measures {
+			if k.Set&(1<<i) != 0 {
+				d.Measures = append(d.Measures, b.Measures[i].Terms.Key)
+			}
+		}
+		e.Packages = append(e.Packages, d)
 	}
 	return e, nil
 }

@@ -24,6 +24,22 @@ type Explanation struct {
 	InputShare      map[string]float64 `json:"input_share"`
 	Cautions        []string           `json:"cautions"`
 	Measures        []MeasureDoc       `json:"measures"`
+	Packages        []PackageDoc       `json:"packages"`
+}
+
+// PackageDoc is one package of measures: of those that save energy, one that no other
+// beats in both cost and saving.
+type PackageDoc struct {
+	Measures      []string `json:"measures"` // keys; none is to do nothing
+	Cost          float64  `json:"cost"`
+	UpkeepPerYear float64  `json:"upkeep_a"`
+	CompanionM3H  *float64 `json:"companion_ventilation_m3_h,omitempty"`
+	NeedKWh       float64  `json:"need_kwh_a"`
+	SavingKWh     float64  `json:"saving_kwh_a"`
+	CO2Kg         float64  `json:"co2_kg_a"`
+	MoneyPerYear  float64  `json:"money_a"`
+	NPV           float64  `json:"npv"` // over the calculation period
+	Cautions      []string `json:"cautions"`
 }
 
 // ClimateDoc is the climate used.

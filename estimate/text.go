@@ -39,6 +39,7 @@ func (e *Explanation) WriteText(out io.Writer) error {
 
 	writePaths(p, e)
 	writeMeasures(p, e, numbers)
+	writePackages(p, e)
 	if err := w.Flush(); err != nil {
 		return err
 	}
@@ -102,6 +103,29 @@ func writeMeasures(p func(string, ...any), e *Explanation, numbers map[string]in
 			p("  %s\t%s\t%s\t%s\n", label, c.what, c.before, c.after)
 			label = ""
 		}
+	}
+}
+
+// writePackages shows the staircase from nothing to all that saves energy.
+func writePackages(p func(string, ...any), e *Explanation) {
+	labels := map[string]string{}
+	for _, m := range e.Measures {
+		labels[m.Measure] = m.Label
+	}
+	p("\nPackages: no other is both cheaper and saves more\n  cost\tsaves kWh/a\tneed after kWh/a\tmoney/a\tNPV\tCO2 kg/a\tmeasures\n")
+	for _, k := range e.Packages {
+		names := make([]string, len(k.Measures))
+		for i, m := range k.Measures {
+			names[i] = labels[m]
+		}
+		what := strings.Join(names, " + ")
+		if len(names) == 0 {
+			what = "nothing"
+		}
+		if k.CompanionM3H != nil {
+			what += fmt.Sprintf(", with %.0f m3/h of mechanical ventilation", *k.CompanionM3H)
+		}
+		p("  %.0f\t%.0f\t%.0f\t%.0f\t%.0f\t%.0f\t%s\n", k.Cost, k.SavingKWh, k.NeedKWh, k.MoneyPerYear, k.NPV, k.CO2Kg, what)
 	}
 }
 

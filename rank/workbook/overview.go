@@ -70,7 +70,7 @@ func (b *book) fillOverview(pg *page) error {
 	}
 	b.masthead(o)
 	b.highlights(o)
-	steps := []func(*opening) error{b.losses, b.savings, b.leads, b.supply, b.firmness, b.cautions, b.contents}
+	steps := []func(*opening) error{b.losses, b.savings, b.bought, b.leads, b.supply, b.firmness, b.cautions, b.contents}
 	for _, step := range steps {
 		if err := step(o); err != nil {
 			return err

@@ -127,7 +127,40 @@ func (b *book) programmePage(p *Programme, chosen *spread) error {
 	if s.err != nil {
 		return s.err
 	}
-	return b.setPrint(pg, layout{titleRows: "1:1"})
+	return b.setPrint(pg, layout{portrait: true, titleRows: "1:1"})
+}
+
+// bought tells on the opening page what the programme buys.
+func (b *book) bought(o *opening) error {
+	p := b.in.Programme
+	if p == nil {
+		return nil
+	}
+	budget, cost, kwh, co2, money := 0.0, 0.0, 0.0, 0.0, 0.0
+	for _, v := range p.Budgets {
+		budget += v
+	}
+	for i := range p.Chosen {
+		k := &p.Chosen[i].Package
+		cost += k.Cost
+		kwh += k.SavingKWh
+		co2 += k.CO2Kg
+		money += k.MoneyPerYear
+	}
+	years := "one year"
+	if n := len(p.Budgets); n > 1 {
+		years = itoa(n) + " years"
+	}
+	words, _, _ := b.valueWords(p.By)
+	o.title("What the programme buys")
+	o.next(ordinaryHeight)
+	o.across(1, gridColumns, b.st.textLink(), "Year by year on the sheet "+programmeSheet)
+	o.linkTo(1, quoteSheet(programmeSheet)+"!A1")
+	delivered := b.summary.DeliveredKWh + b.summary.FansKWh
+	o.sentence(fmt.Sprintf("With %s thousand %s over %s, packages in %s cost %s thousand %s and save %s MWh/a (%.1f %% of what is delivered), %s t CO₂/a and %s thousand %s a year at the prices of the run. They were chosen for the most %s; no other choice within the same limits could bring more than %.2g %% more.",
+		group(budget/1000), b.currency(), years, buildings(len(p.Chosen)), group(cost/1000), b.currency(), group(kwh/1000), 100*ratio(kwh, delivered),
+		group(co2/1000), group(money/1000), b.currency(), words, 100*p.Gap))
+	return nil
 }
 
 func (b *book) programmeYears(s *sheetBuilder, p *Programme, words, unit string, scale float64) {
@@ -227,7 +260,7 @@ func (b *book) budgetCurve(s *sheetBuilder, p *Programme, words, unit string, sc
 		Type: excelize.Scatter,
 		Series: []excelize.ChartSeries{{
 			Name: sheet + "!" + absolute(cellName(2, head)), Categories: span(1), Values: span(2),
-			Line:   excelize.LineOptions{Width: 2.25, Fill: excelize.Fill{Type: "pattern", Pattern: 1, Color: []string{accent}}},
+			Line:   excelize.LineOptions{Type: excelize.LineSolid, Width: 2.25, Fill: excelize.Fill{Type: "pattern", Pattern: 1, Color: []string{accent}}},
 			Marker: excelize.ChartMarker{Symbol: "circle", Size: 5, Fill: excelize.Fill{Type: "pattern", Pattern: 1, Color: []string{accent}}},
 		}},
 		Title: excelize.ChartTitle{Paragraph: []excelize.RichTextRun{{
