@@ -197,8 +197,8 @@ func (b *book) measureTable(s *sheetBuilder) {
 		s.input(5, plain, m.LifeYears, m.life)
 		s.input(6, "0.0 %", m.UpkeepShare, m.upkeep)
 		if m.SizeExponent != 0 {
-			s.input(7, plain, m.SizeFrom, m.from)
-			s.input(8, two, m.SizeExponent, m.exponent)
+			s.r.number(7, b.st.value(plain), m.SizeFrom, 6)
+			s.r.number(8, b.st.value(two), m.SizeExponent, 6)
 		}
 		s.merged(from, to, far)
 		s.note(to+1, m.Source)

@@ -52,7 +52,7 @@ func (b *book) addMeasure(i int) error {
 		row := rowsOf[k]
 		bl := &b.in.Buildings[row.Index]
 		*x = measureRow{rank: row.Rank, b: bl, m: &bl.Measures[i]}
-		x.work = b.terms.workOf(bl, x.m)
+		x.work = b.terms.workOf(m, bl, x.m)
 		x.money = b.terms.amounts(m, &x.work)
 		x.cautions = strings.Join(caution.Shorts(x.m.Cautions), "; ")
 	}
@@ -152,6 +152,8 @@ func (b *book) measureColumns(m *measureTerms) []column[measureRow] {
 	number("heatAfter", workings, "Heat delivered after (kWh/a)", 12, whole, energyDecimals, func(x *measureRow) float64 { return x.work.heatAfter })
 	number("fansBefore", workings, "Fans today (kWh/a)", 11, whole, energyDecimals, func(x *measureRow) float64 { return x.work.fansBefore })
 	number("fansAfter", workings, "Fans after (kWh/a)", 11, whole, energyDecimals, func(x *measureRow) float64 { return x.work.fansAfter })
+	number("priced", workings, "Amount at the full price", 12, whole, quantityDecimals, func(x *measureRow) float64 { return x.work.priced })
+	number("pricedCompanion", workings, "Ventilation at the full price (m³/h)", 12, whole, quantityDecimals, func(x *measureRow) float64 { return x.work.pricedCompanion })
 	formula("own", workings, "Cost of the measure itself ("+cur+")", 13, whole)
 	formula("vent", workings, "Cost of the ventilation it brings ("+cur+")", 14, whole)
 	formula("upkeep", workings, "Upkeep ("+cur+"/a)", 10, whole)
@@ -162,7 +164,7 @@ func (b *book) measureColumns(m *measureTerms) []column[measureRow] {
 // measureMoney gives the columns of money their formulas.
 func (b *book) measureMoney(m *measureTerms, l *list[measureRow]) {
 	f := b.terms.formulas(m, &cells{
-		quantity: l.of("quantity"), companion: l.of("companion"), saving: l.of("saving"),
+		priced: l.of("priced"), pricedCompanion: l.of("pricedCompanion"), saving: l.of("saving"),
 		heatBefore: l.of("heatBefore"), heatAfter: l.of("heatAfter"), fansBefore: l.of("fansBefore"), fansAfter: l.of("fansAfter"),
 		own: l.of("own"), vent: l.of("vent"), cost: l.of("cost"), upkeep: l.of("upkeep"), money: l.of("money"),
 	})

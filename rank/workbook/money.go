@@ -24,7 +24,6 @@ type measureTerms struct {
 	*archetype.Measure
 	slug                      string
 	fixed, unit, life, upkeep string // names
-	from, exponent            string // names, of the economies of size
 	levelName                 string // name of the present value of 1 a year
 	level                     float64
 	pvName                    map[string]string  // by carrier word: present value of 1 a year, growing
@@ -82,7 +81,6 @@ func (t *terms) newMeasure(a *archetype.Measure, names namer) *measureTerms {
 	m := &measureTerms{Measure: a, slug: slug(a.Key), pvName: map[string]string{}, pv: map[string]float64{}}
 	m.fixed, m.unit = names.defined("cost", m.slug, "fixed"), names.defined("cost", m.slug, "unit")
 	m.life, m.upkeep = names.defined("life", m.slug), names.defined("upkeep", m.slug)
-	m.from, m.exponent = names.defined("size", m.slug, "from"), names.defined("size", m.slug, "exponent")
 	m.levelName = names.defined("pv_level", m.slug)
 	m.level = finance.PresentValueFactor(t.rate, 0, a.LifeYears)
 	for _, c := range t.carriers {
@@ -106,6 +104,7 @@ type amounts struct {
 // work holds the numbers a row's money formulas use, rounded as in the sheet.
 type work struct {
 	quantity, companion         float64
+	priced, pricedCompanion     float64 // amounts that cost the full price per unit: economies of size taken off
 	heatBefore, heatAfter       float64
 	fansBefore, fansAfter       float64
 	saving                      float64
@@ -118,9 +117,15 @@ const (
 	quantityDecimals = 6 // unit costs are large
 )
 
-func (t *terms) workOf(b *result.Building, m *result.Measure) work {
+// priced is the amount that at the full price per unit costs what a quantity costs.
+func priced(a *archetype.Measure, quantity float64) float64 {
+	return fixed(quantity*a.SizeFactor(quantity), quantityDecimals)
+}
+
+func (t *terms) workOf(a *measureTerms, b *result.Building, m *result.Measure) work {
 	e := func(v float64) float64 { return fixed(v, energyDecimals) }
 	return work{
+		priced: priced(a.Measure, m.Quantity), pricedCompanion: priced(t.companion.Measure, m.CompanionQuantity),
 		quantity: fixed(m.Quantity, quantityDecimals), companion: fixed(m.CompanionQuantity, quantityDecimals),
 		heatBefore: e(m.HeatBeforeKWh), heatAfter: e(m.HeatAfterKWh),
 		fansBefore: e(m.FansBeforeKWh), fansAfter: e(m.FansAfterKWh),
@@ -133,9 +138,9 @@ func (t *terms) workOf(b *result.Building, m *result.Measure) work {
 // fusing a product and a sum, which a spreadsheet does not do.
 func (t *terms) amounts(m *measureTerms, w *work) (a amounts) {
 	power := t.byWord[electricity]
-	a.own = m.Cost(w.quantity)
+	a.own = m.FixedCost + float64(m.UnitCost*w.priced)
 	if w.companion > 0 {
-		a.vent = t.companion.Cost(w.companion)
+		a.vent = t.companion.FixedCost + float64(t.companion.UnitCost*w.pricedCompanion)
 	}
 	a.cost = a.own + a.vent
 	a.upkeep = float64(a.own*m.UpkeepShare) + float64(a.vent*t.companion.UpkeepShare)
@@ -166,7 +171,7 @@ func (t *terms) amounts(m *measureTerms, w *work) (a amounts) {
 // cells names the cells of a row that its formulas refer to, as "X#" with # for
 // the row.
 type cells struct {
-	quantity, companion, saving                  string
+	priced, pricedCompanion, saving              string
 	heatBefore, heatAfter, fansBefore, fansAfter string
 	own, vent, cost, upkeep, money               string
 }
@@ -177,19 +182,10 @@ type formulas struct {
 	money, npv                               map[[2]string]string // by carrier before and after
 }
 
-// costFormula is the formula of archetype.Measure.Cost.
-func (m *measureTerms) costFormula(quantity string) string {
-	f := m.fixed + "+" + m.unit + "*" + quantity
-	if m.SizeExponent == 0 {
-		return f
-	}
-	return f + "*IF(" + quantity + ">" + m.from + ",(" + quantity + "/" + m.from + ")^-" + m.exponent + ",1)"
-}
-
 func (t *terms) formulas(m *measureTerms, c *cells) *formulas {
 	f := &formulas{
-		own:     escape(m.costFormula(c.quantity)),
-		vent:    escape(t.companion.costFormula(c.companion)),
+		own:     m.fixed + "+" + m.unit + "*" + c.priced,
+		vent:    t.companion.fixed + "+" + t.companion.unit + "*" + c.pricedCompanion,
 		cost:    c.own + "+" + c.vent,
 		upkeep:  c.own + "*" + m.upkeep + "+" + c.vent + "*" + t.companion.upkeep,
 		payback: escape("IF(" + c.money + "<=" + c.upkeep + `,"never",` + c.cost + "/(" + c.money + "-" + c.upkeep + "))"),

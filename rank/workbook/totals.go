@@ -17,6 +17,7 @@ type totalRow struct {
 
 	saved                   []float64 // by carrier, as in the sheet
 	quantity, companion     float64
+	priced, pricedCompanion float64 // at the full price per unit
 	own, vent, cost, upkeep float64
 	money, npv              float64
 	pays                    bool
@@ -29,8 +30,17 @@ func (b *book) total(i int) (x totalRow) {
 	c := b.terms.companion
 	x = totalRow{m: m, t: t, first: b.measures[i].sheets[0],
 		quantity: fixed(t.Quantity, quantityDecimals), companion: fixed(t.CompanionQuantity, quantityDecimals)}
-	x.own = float64(float64(t.Applies)*m.FixedCost) + float64(x.quantity*m.UnitCost)
-	x.vent = float64(float64(t.CompanionCount)*c.FixedCost) + float64(x.companion*c.UnitCost)
+	for k := range b.in.Buildings {
+		if b.places[i][k] == 0 {
+			continue
+		}
+		r := &b.in.Buildings[k].Measures[i]
+		x.priced += priced(m.Measure, r.Quantity)
+		x.pricedCompanion += priced(c.Measure, r.CompanionQuantity)
+	}
+	x.priced, x.pricedCompanion = fixed(x.priced, quantityDecimals), fixed(x.pricedCompanion, quantityDecimals)
+	x.own = float64(float64(t.Applies)*m.FixedCost) + float64(x.priced*m.UnitCost)
+	x.vent = float64(float64(t.CompanionCount)*c.FixedCost) + float64(x.pricedCompanion*c.UnitCost)
 	x.cost = x.own + x.vent
 	x.upkeep = float64(x.own*m.UpkeepShare) + float64(x.vent*c.UpkeepShare)
 	worth := 0.0
@@ -84,6 +94,8 @@ func (b *book) totalColumns() []column[totalRow] {
 	cols = append(cols, textColumn(b, what, "Unit of the amount", 22, func(x *totalRow) string { return quantityHead(x.m.Unit) }))
 	number("fitted", what, "Buildings it brings ventilation to", 12, 0, func(x *totalRow) float64 { return float64(x.t.CompanionCount) })
 	number("companion", what, "Ventilation it brings (m³/h)", 12, quantityDecimals, func(x *totalRow) float64 { return x.companion })
+	number("priced", what, "Amount at the full price", 13, quantityDecimals, func(x *totalRow) float64 { return x.priced })
+	number("pricedCompanion", what, "Ventilation at the full price (m³/h)", 13, quantityDecimals, func(x *totalRow) float64 { return x.pricedCompanion })
 	number("", saves, "Saving (kWh/a)", 14, energyDecimals, func(x *totalRow) float64 { return x.t.SavingKWh })
 	number("", saves, "CO₂ saved (kg/a)", 13, 3, func(x *totalRow) float64 { return x.t.CO2Kg })
 	for i, word := range b.summary.Carriers {
@@ -111,10 +123,10 @@ func (b *book) totalMoney(l *list[totalRow]) {
 	own, vent, cost, upkeep, money := l.of("own"), l.of("vent"), l.of("cost"), l.of("upkeep"), l.of("money")
 	formulaOf := map[string]func(x *totalRow) (string, float64){
 		"own": func(x *totalRow) (string, float64) {
-			return l.of("count") + "*" + x.m.fixed + "+" + l.of("quantity") + "*" + x.m.unit, x.own
+			return l.of("count") + "*" + x.m.fixed + "+" + l.of("priced") + "*" + x.m.unit, x.own
 		},
 		"vent": func(x *totalRow) (string, float64) {
-			return l.of("fitted") + "*" + c.fixed + "+" + l.of("companion") + "*" + c.unit, x.vent
+			return l.of("fitted") + "*" + c.fixed + "+" + l.of("pricedCompanion") + "*" + c.unit, x.vent
 		},
 		"cost": func(x *totalRow) (string, float64) { return own + "+" + vent, x.cost },
 		"upkeep": func(x *totalRow) (string, float64) {
