@@ -4,11 +4,13 @@ import (
 	"math"
 
 	"kelvinrow/estimate/airflow"
+	"kelvinrow/estimate/archetype"
 	"kelvinrow/estimate/balance"
 	"kelvinrow/estimate/building"
 	"kelvinrow/estimate/caution"
 	"kelvinrow/estimate/climate"
 	"kelvinrow/estimate/fabric"
+	"kelvinrow/estimate/finance"
 	"kelvinrow/estimate/moisture"
 	"kelvinrow/estimate/result"
 	"kelvinrow/estimate/state"
@@ -45,7 +47,7 @@ func (b *Basis) Explain(bl *building.Building) (*Explanation, error) {
 		var after measured // the document points into it
 		mm := &b.Measures[i]
 		b.try(mm, m, &base, &after)
-		e.Measures[i] = b.measureDoc(mm.Terms.Key, mm.Terms.Label, mm.Terms.Unit, &after)
+		e.Measures[i] = b.measureDoc(mm.Terms, &after)
 	}
 	var p packer
 	for _, k := range b.packages(&p, m, &base, func(k *result.Package) float64 { return k.SavingKWh }) {
@@ -76,19 +78,22 @@ func distinct(trail []InputDoc) []InputDoc {
 	return out
 }
 
-func (b *Basis) measureDoc(key, label, unit string, a *measured) MeasureDoc {
+func (b *Basis) measureDoc(t *archetype.Measure, a *measured) MeasureDoc {
 	r := &a.result
-	d := MeasureDoc{Measure: key, Label: label, Applies: r.Applies, Reason: r.Reason, Cautions: texts(caution.Texts(r.Cautions))}
+	d := MeasureDoc{Measure: t.Key, Label: t.Label, Applies: r.Applies, Reason: r.Reason, Cautions: texts(caution.Texts(r.Cautions))}
 	if !r.Applies {
 		return d
 	}
-	d.Quantity, d.Unit = &r.Quantity, unit
+	d.Quantity, d.Unit = &r.Quantity, t.Unit
 	if r.CompanionQuantity > 0 {
 		d.CompanionM3H = &r.CompanionQuantity
 	}
 	d.Cost, d.UpkeepPerYear = &r.Cost, &r.UpkeepPerYear
 	d.SavingKWh, d.NeedSavingKWh = &r.SavingKWh, &r.NeedSavingKWh
 	d.CO2Kg, d.MoneyPerYear, d.NPV = &r.CO2Kg, &r.MoneyPerYear, &r.NPV
+	rate := b.Set.Economics.DiscountRate
+	d.DiscountedA = finite(finance.DiscountedPayback(r.Cost, r.MoneyPerYear-r.UpkeepPerYear, rate))
+	d.AnnuityA = finite(r.Cost * finance.CapitalRecovery(rate, t.LifeYears))
 	d.PaybackYears, d.CostOfSavedKWh = finite(r.PaybackYears), finite(r.CostOfSavedKWh)
 	s := b.stateDoc(&a.state, &a.out)
 	d.State = &s

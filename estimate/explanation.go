@@ -129,7 +129,9 @@ type MeasureDoc struct {
 	CO2Kg          *float64  `json:"co2_kg_a,omitempty"`
 	MoneyPerYear   *float64  `json:"money_a,omitempty"`
 	NPV            *float64  `json:"npv,omitempty"`
-	PaybackYears   *float64  `json:"payback_a,omitempty"` // absent: never
+	PaybackYears   *float64  `json:"payback_a,omitempty"`            // absent: never
+	DiscountedA    *float64  `json:"discounted_payback_a,omitempty"` // at level prices; absent: never
+	AnnuityA       *float64  `json:"annuity_a,omitempty"`            // of the cost over its life
 	CostOfSavedKWh *float64  `json:"cost_of_saved_kwh,omitempty"`
 	Cautions       []string  `json:"cautions"`
 	State          *StateDoc `json:"state,omitempty"`

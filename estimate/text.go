@@ -74,18 +74,24 @@ func writePaths(p func(string, ...any), e *Explanation) {
 // writeMeasures shows what each measure does: first what it is worth, then what it
 // changes, before and after.
 func writeMeasures(p func(string, ...any), e *Explanation, numbers map[string]int) {
-	p("\nMeasures\n  measure\tquantity\tcost\tsaves kWh/a\tneed after kWh/a\tmoney/a\tNPV\tpayback a\tCO2 kg/a\tcautions\n")
+	p("\nMeasures\n  measure\tquantity\tcost\tsaves kWh/a\tneed after kWh/a\tmoney/a\tNPV\tpayback a\tdiscounted a\tcost of saved kWh\tCO2 kg/a\tcautions\n")
 	for _, m := range e.Measures {
 		if !m.Applies {
 			p("  %s\tdoes not apply: %s\n", m.Label, m.Reason)
 			continue
 		}
-		payback := "never"
-		if m.PaybackYears != nil {
-			payback = fmt.Sprintf("%.1f", *m.PaybackYears)
+		years := func(v *float64) string {
+			if v == nil {
+				return "never"
+			}
+			return fmt.Sprintf("%.1f", *v)
 		}
-		p("  %s\t%.0f %s\t%.0f\t%.0f\t%.0f\t%.0f\t%.0f\t%s\t%.0f\t%s\n", m.Label, *m.Quantity, m.Unit, *m.Cost,
-			*m.SavingKWh, m.State.NeedKWh, *m.MoneyPerYear, *m.NPV, payback, *m.CO2Kg, listed(m.Cautions, numbers))
+		perKWh := "-"
+		if m.CostOfSavedKWh != nil {
+			perKWh = fmt.Sprintf("%.3f", *m.CostOfSavedKWh)
+		}
+		p("  %s\t%.0f %s\t%.0f\t%.0f\t%.0f\t%.0f\t%.0f\t%s\t%s\t%s\t%.0f\t%s\n", m.Label, *m.Quantity, m.Unit, *m.Cost,
+			*m.SavingKWh, m.State.NeedKWh, *m.MoneyPerYear, *m.NPV, years(m.PaybackYears), years(m.DiscountedA), perKWh, *m.CO2Kg, listed(m.Cautions, numbers))
 		if m.CompanionM3H != nil {
 			p("    with %.0f m3/h of mechanical ventilation, which it then needs\n", *m.CompanionM3H)
 		}

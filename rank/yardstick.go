@@ -22,6 +22,7 @@ const (
 	EnergyPerMoney Yardstick = "kwh-per-euro" // energy saved per year for each unit of money invested
 	NPV            Yardstick = "npv"          // net present value over the measure's life
 	Payback        Yardstick = "payback"      // simple payback, shortest first
+	CostOfSaving   Yardstick = "cost-per-kwh" // cost of saved energy, cheapest first
 
 	Default = Energy
 )
@@ -45,6 +46,7 @@ var yardsticks = []yardstick{
 	{EnergyPerMoney, "energy saved per year for the money invested", 7, energyPerMoney},
 	{NPV, "net present value", 3, func(m *result.Measure) float64 { return m.NPV }},
 	{Payback, "payback time, shortest first", 6, func(m *result.Measure) float64 { return -m.PaybackYears }},
+	{CostOfSaving, "cost of saved energy, cheapest first", 9, func(m *result.Measure) float64 { return -m.CostOfSavedKWh }},
 }
 
 func energyPerMoney(m *result.Measure) float64 {

@@ -24,7 +24,7 @@ type rankFlags struct {
 
 func (r *rankFlags) add(c *cobra.Command, out string) {
 	c.Flags().StringVarP(&r.out, "output", "o", out, "`file` for the ranked workbook")
-	c.Flags().StringVar(&r.yardstick, "by", "kwh", "what to rank by: kwh, co2, money, kwh-per-euro, npv or payback")
+	c.Flags().StringVar(&r.yardstick, "by", "kwh", "what to rank by: kwh, co2, money, kwh-per-euro, npv, payback or cost-per-kwh")
 	c.Flags().IntVar(&r.top, "top", 0, "rows per measure sheet (0 is all)")
 	r.programme.add(c)
 }
