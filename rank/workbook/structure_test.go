@@ -74,7 +74,8 @@ func TestCharts(t *testing.T) {
 			} `xml:"graphicFrame>nvGraphicFramePr>cNvPr"`
 		} `xml:"twoCellAnchor"`
 	}
-	o.decode(t, "xl/drawings/drawing1.xml", &anchors)
+	// The programme's page is made first, with the curve.
+	o.decode(t, "xl/drawings/drawing2.xml", &anchors)
 	if len(anchors.A) != 3 {
 		t.Fatalf("%d charts, want 3", len(anchors.A))
 	}
@@ -87,7 +88,19 @@ func TestCharts(t *testing.T) {
 			t.Errorf("chart %d has no text for those who cannot see it", i+1)
 		}
 	}
-	for n := 1; n <= 3; n++ {
+	var curve struct {
+		X string `xml:"chart>plotArea>scatterChart>ser>xVal>numRef>f"`
+		Y string `xml:"chart>plotArea>scatterChart>ser>yVal>numRef>f"`
+	}
+	o.decode(t, "xl/charts/chart1.xml", &curve)
+	for _, ref := range []string{curve.X, curve.Y} {
+		s, span := follow(ref)
+		from, to, _ := strings.Cut(span, ":")
+		if s != "Programme" || o.cells[s][from].value == "" || o.cells[s][to].value == "" {
+			t.Errorf("the curve of budgets draws %q", ref)
+		}
+	}
+	for n := 2; n <= 4; n++ {
 		var c struct {
 			Name       string `xml:"chart>plotArea>barChart>ser>tx>strRef>f"`
 			Categories string `xml:"chart>plotArea>barChart>ser>cat>strRef>f"`

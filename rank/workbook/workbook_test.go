@@ -306,6 +306,7 @@ func TestOddInputs(t *testing.T) {
 		t.Parallel()
 		in := portfolio(t, 1)
 		in.Buildings, in.Findings = nil, nil
+		in.Programme = &Programme{By: rank.NPV, Budgets: []float64{0}}
 		o := open(t, written(t, in))
 		noErrorsOrNaN(t, o)
 	})
@@ -315,6 +316,7 @@ func TestOddInputs(t *testing.T) {
 		for i := range in.Buildings {
 			in.Buildings[i] = result.Building{ID: in.Buildings[i].ID, Failed: "no floor area and no volume"}
 		}
+		in.Programme = invest(in.Buildings)
 		o := open(t, written(t, in))
 		noErrorsOrNaN(t, o)
 		if !strings.Contains(o.cells["Buildings"][o.column(t, "Buildings", "Cautions, or why there is no estimate")+"6"].value, "no floor area") {
