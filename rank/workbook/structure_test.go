@@ -89,7 +89,7 @@ func TestCharts(t *testing.T) {
 		}
 	}
 	var curve struct {
-		X string `xml:"chart>plotArea>scatterChart>ser>xVal>numRef>f"`
+		X string `xml:"chart>plotArea>scatterChart>ser>xVal>strRef>f"`
 		Y string `xml:"chart>plotArea>scatterChart>ser>yVal>numRef>f"`
 	}
 	o.decode(t, "xl/charts/chart1.xml", &curve)
