@@ -1,257 +1,338 @@
 package sheet
 
 import (
+	"bytes"
 	"context"
-	"encoding/xml"
 	"errors"
 	"fmt"
-	"io"
-	"math"
-	"strconv"
-	"strings"
 )
 
 // scanner reads the rows of one sheet part in a single forward pass.
 type scanner struct {
-	x      *xlsx
-	name   string
-	strict bool // check that elements nest, which costs time, on the first pass
-	merges []Merge
+	*tokens
+	x       *xlsx
+	name    string
+	visit   func(*Row) error
+	stopped error // what visit returned
+	merging bool
+	merges  []Merge
 
 	row   Row
 	last  int // number of the last whole row
 	count int
 
-	// of the cell being read
-	column  int
-	kind    string
-	style   int
-	value   []byte
-	inValue bool
-	skip    int // depth inside a phonetic hint
+	inData, inRow, inCell bool
+	skip                  int // depth of an extension that is passed over, 0 outside of one
+	cell                  rawCell
+	known                 known
 }
 
-// failure wraps what visit returned, so that it is not taken for damage.
-type failure struct{ err error }
+// rawCell is the cell being read.
+type rawCell struct {
+	column         int
+	kind           kind
+	style          int
+	value, inline  []byte // of <v> and <is>
+	hasValue, isIn bool   // there was a <v>, there was an <is>
+	want           *[]byte
+	hints          int // open hints for pronunciation
+}
 
-func (f failure) Error() string { return f.err.Error() }
-
-func (s *scanner) scan(ctx context.Context, part string, visit func(*Row) error) (int, error) {
-	d, c, err := s.x.decoder(part, maxPartBytes)
+func (s *scanner) scan(ctx context.Context, name string, visit func(*Row) error) error {
+	s.visit = visit
+	p, err := s.x.open(ctx, name, maxPartBytes)
 	if err == nil {
-		defer c.Close()
-		err = s.tokens(ctx, d, visit)
+		defer p.close()
+		s.tokens = p.tokens
+		err = s.read()
 	}
-	var f failure
 	var bad *BadFile
 	switch {
 	case err == nil:
-		return s.count, nil
-	case errors.As(err, &f):
-		return s.count, f.err
+		return nil
+	case s.stopped != nil:
+		return s.stopped
 	case errors.As(err, &bad):
-		return s.count, bad
+		return bad
 	}
-	return s.count, malformed(s.name, s.last, err)
+	return malformed(s.name, s.last, err)
 }
 
-func (s *scanner) tokens(ctx context.Context, d *xml.Decoder, visit func(*Row) error) error {
-	next := d.RawToken
-	if s.strict {
-		next = d.Token
-	}
-	worksheet, depth := false, 0
+func (s *scanner) read() error {
 	for {
-		t, err := next()
-		if err == io.EOF {
-			if !worksheet || depth != 0 {
-				return io.ErrUnexpectedEOF
-			}
+		if fast, err := s.fastCell(); err != nil {
+			return err
+		} else if fast {
+			continue
+		}
+		k, err := s.next()
+		if err != nil {
+			return err
+		}
+		switch k {
+		case tokenStart:
+			err = s.start()
+		case tokenEnd:
+			err = s.finish()
+		case tokenText:
+			err = s.take()
+		case tokenEOF:
 			return nil
 		}
 		if err != nil {
 			return err
 		}
-		switch t := t.(type) {
-		case xml.StartElement:
-			depth++
-			if t.Name.Local == "worksheet" && depth == 1 {
-				worksheet = true
-			}
-			if t.Name.Local == "row" && s.count%256 == 0 {
-				if err := ctx.Err(); err != nil {
-					return err
-				}
-			}
-			if err := s.start(t); err != nil {
-				return err
-			}
-		case xml.EndElement:
-			depth--
-			if err := s.end(t.Name.Local, visit); err != nil {
-				return err
-			}
-		case xml.CharData:
-			if s.inValue && s.skip == 0 {
-				if len(s.value)+len(t) > maxCellBytes {
-					return &BadFile{"too-wide", fmt.Sprintf("cell %s%d of sheet %q holds more than %d characters", ColumnLetters(s.column), s.row.Number, s.name, maxCellBytes), "check the cell and save again"}
-				}
-				s.value = append(s.value, t...)
-			}
-		}
 	}
 }
 
-func (s *scanner) start(e xml.StartElement) error {
-	switch e.Name.Local {
-	case "row":
-		s.row.Number = s.last + 1
-		if r := attr(e, "r"); r != "" {
-			n, err := strconv.Atoi(r)
-			if err != nil || n <= s.last || n > maxRows {
-				return fmt.Errorf("row number %q after row %d", r, s.last)
-			}
-			s.row.Number = n
+func (s *scanner) take() error {
+	w := s.cell.want
+	if w == nil || s.cell.hints > 0 {
+		return nil
+	}
+	if len(*w)+len(s.data) > maxCellBytes {
+		return &BadFile{"too-wide", fmt.Sprintf("cell %s%d of sheet %q holds more than %d characters", ColumnLetters(s.cell.column), s.row.Number, s.name, maxCellBytes), "check the cell and save again"}
+	}
+	*w = append(*w, s.data...)
+	return nil
+}
+
+func (s *scanner) start() error {
+	switch {
+	case s.skip > 0:
+		return nil
+	case s.inCell:
+		return s.startInCell()
+	case s.inRow:
+		switch string(s.local) {
+		case "c":
+			return s.startCell()
+		case "row", "sheetData":
+			return s.misplaced()
 		}
-		s.row.Cells = s.row.Cells[:0]
-		s.column = -1
-	case "c":
-		s.column++
-		s.kind, s.style = "", 0
-		s.value = s.value[:0]
-		for _, a := range e.Attr {
-			switch a.Name.Local {
-			case "r":
-				col, row, ok := splitReference(a.Value)
-				if !ok || row != s.row.Number || col < s.column {
-					return fmt.Errorf("cell reference %q in row %d", a.Value, s.row.Number)
-				}
-				s.column = col
-			case "t":
-				s.kind = a.Value
-			case "s":
-				s.style, _ = strconv.Atoi(a.Value)
-			}
+	case s.inData:
+		switch string(s.local) {
+		case "row":
+			return s.startRow()
+		case "c", "sheetData":
+			return s.misplaced()
 		}
-	case "v":
-		// A value beside inline text is a leftover of the writing program.
-		if s.inValue = s.kind != "inlineStr"; s.inValue {
-			s.value = s.value[:0]
+	default:
+		return s.startOutside()
+	}
+	s.skipExtension()
+	return nil
+}
+
+func (s *scanner) startOutside() error {
+	switch string(s.local) {
+	case "sheetData":
+		if s.depth() != 2 {
+			return s.misplaced()
 		}
-	case "t":
-		s.inValue = s.kind == "inlineStr"
-	case "rPh":
-		s.skip++
+		s.inData = true
+	case "row": // a drawing has elements of that name, deeper
+		if s.depth() == 2 {
+			return s.misplaced()
+		}
 	case "mergeCell":
-		if s.strict {
-			a, b, _ := strings.Cut(attr(e, "ref"), ":")
-			c1, r1, ok1 := splitReference(a)
-			c2, r2, ok2 := splitReference(b)
-			if len(s.merges) >= maxMerges {
-				return &BadFile{"too-big", fmt.Sprintf("sheet %q has more than %d merged ranges", s.name, int(maxMerges)), "take the merging off and save again"}
-			}
-			if ok1 && ok2 {
-				s.merges = append(s.merges, Merge{min(r1, r2), max(r1, r2), min(c1, c2), max(c1, c2)})
-			}
+		return s.merge()
+	default:
+		if s.depth() == 1 && string(s.local) != "worksheet" {
+			return fmt.Errorf("it is %.40q and no worksheet", s.local)
 		}
+		s.skipExtension()
 	}
 	return nil
 }
 
-func (s *scanner) end(local string, visit func(*Row) error) error {
-	switch local {
-	case "v", "t":
-		s.inValue = false
+// skipExtension passes over what other programs keep in a sheet.
+func (s *scanner) skipExtension() {
+	if string(s.local) == "extLst" {
+		s.skip = s.depth()
+	}
+}
+
+func (s *scanner) misplaced() error { return fmt.Errorf("element %.40q is out of place", s.local) }
+
+func (s *scanner) startRow() error {
+	s.row.Number = s.last + 1
+	seen := false
+	for _, a := range s.attrs {
+		if a.nameEnd-a.name != 1 || s.tag[a.name] != 'r' {
+			continue
+		}
+		v := s.tag[a.value:a.valueEnd]
+		n, ok := digits(v)
+		if !ok || n <= s.last || n > maxRows || seen {
+			return fmt.Errorf("row number %.40q after row %d", v, s.last)
+		}
+		s.row.Number, seen = n, true
+	}
+	if s.row.Number > maxRows {
+		return &BadFile{"too-big", fmt.Sprintf("sheet %q has more than %d rows", s.name, maxRows), "split the table"}
+	}
+	s.row.Cells = s.row.Cells[:0]
+	s.cell.column = -1
+	s.inRow = true
+	return nil
+}
+
+func (s *scanner) startCell() error {
+	c := &s.cell
+	*c = rawCell{column: c.column + 1, value: c.value[:0], inline: c.inline[:0]}
+	seen := 0
+	for _, a := range s.attrs {
+		if a.nameEnd-a.name != 1 {
+			continue
+		}
+		name, v := s.tag[a.name], s.tag[a.value:a.valueEnd]
+		switch name {
+		case 'r':
+			col, row, ok := splitReference(v)
+			if !ok || row != s.row.Number || col < c.column || seen&1 != 0 {
+				return fmt.Errorf("cell reference %.40q in row %d", v, s.row.Number)
+			}
+			c.column = col
+			seen |= 1
+		case 't':
+			if seen&2 != 0 {
+				return fmt.Errorf("two kinds of one cell in row %d", s.row.Number)
+			}
+			c.kind = kindOf(v)
+			seen |= 2
+		case 's':
+			c.style, _ = digits(v)
+		}
+	}
+	if c.column >= sheetColumns {
+		return s.tooWide(sheetColumns)
+	}
+	s.inCell = true
+	return nil
+}
+
+func (s *scanner) tooWide(columns int) error {
+	return &BadFile{"too-wide", fmt.Sprintf("sheet %q has more than %d columns", s.name, columns), "remove what does not belong to the table and save again"}
+}
+
+func (s *scanner) startInCell() error {
+	c := &s.cell
+	if c.want != nil {
+		return fmt.Errorf("element %.40q within the text of a cell", s.local)
+	}
+	switch string(s.local) {
+	case "v":
+		c.value = c.value[:0]
+		c.hasValue = true
+		c.want = &c.value
+	case "is":
+		c.isIn = true
+	case "t":
+		if c.isIn {
+			c.want = &c.inline
+		}
 	case "rPh":
-		s.skip--
-	case "c":
-		cell, err := s.cell()
-		if err != nil {
-			return err
-		}
-		if cell.Kind == Empty {
-			return nil
-		}
-		if s.column >= maxColumns {
-			return &BadFile{"too-wide", fmt.Sprintf("sheet %q has more than %d columns", s.name, maxColumns), "remove what does not belong to the table and save again"}
-		}
-		for len(s.row.Cells) <= s.column {
-			s.row.Cells = append(s.row.Cells, Cell{})
-		}
-		s.row.Cells[s.column] = cell
-	case "row":
-		s.last = s.row.Number
-		s.count++
-		if len(s.row.Cells) == 0 {
-			return nil
-		}
-		if err := visit(&s.row); err != nil {
-			return failure{err}
-		}
+		c.hints++
+	case "c", "row", "sheetData":
+		return s.misplaced()
+	default:
+		s.skipExtension()
 	}
 	return nil
 }
 
-func (s *scanner) cell() (Cell, error) {
-	if len(s.value) == 0 {
-		return Cell{}, nil
-	}
-	switch s.kind {
-	case "s":
-		i, err := strconv.Atoi(strings.TrimSpace(string(s.value)))
-		if err != nil || i < 0 || i >= len(s.x.strings) {
-			return Cell{}, fmt.Errorf("cell %s%d refers to text number %q of %d", ColumnLetters(s.column), s.row.Number, s.value, len(s.x.strings))
+func (s *scanner) finish() error {
+	if s.skip > 0 {
+		if s.depth() < s.skip {
+			s.skip = 0
 		}
-		if s.x.strings[i] == "" {
-			return Cell{}, nil
+		return nil
+	}
+	switch string(s.local) {
+	case "v", "t":
+		s.cell.want = nil
+	case "rPh":
+		s.cell.hints--
+	case "c":
+		if s.inCell {
+			s.inCell = false
+			return s.finishCell()
 		}
-		return Cell{Kind: Text, Text: s.x.strings[i]}, nil
-	case "str", "inlineStr":
-		return Cell{Kind: Text, Text: unescape(string(s.value))}, nil
-	case "b":
-		if v := string(s.value); v == "1" || v == "true" {
-			return Cell{Kind: Bool, Text: "TRUE", Number: 1}, nil
+	case "row":
+		if s.inRow {
+			return s.finishRow()
 		}
-		return Cell{Kind: Bool, Text: "FALSE"}, nil
-	case "e":
-		return Cell{Kind: Fault, Text: string(s.value)}, nil
-	case "d":
-		t := string(s.value)
-		if len(t) >= 10 {
-			return Cell{Kind: Date, Text: t[:10]}, nil
-		}
-		return Cell{Kind: Text, Text: t}, nil
+	case "sheetData":
+		s.inData = false
 	}
-	raw := strings.TrimSpace(string(s.value))
-	if raw == "" {
-		return Cell{}, nil
-	}
-	v, err := strconv.ParseFloat(raw, 64)
-	if err != nil || math.IsInf(v, 0) || math.IsNaN(v) {
-		return Cell{Kind: Text, Text: raw}, nil
-	}
-	as := plain
-	if s.style >= 0 && s.style < len(s.x.formats) {
-		as = s.x.formats[s.style]
-	}
-	if as == asDate {
-		if day, ok := SerialDate(v, s.x.from1904); ok {
-			return Cell{Kind: Date, Text: day, Number: v}, nil
-		}
-	}
-	return Cell{Kind: Number, Text: formatNumber(v), Number: v, Percent: as == asPercent}, nil
+	return nil
 }
 
-// splitReference reads a cell reference such as "AB12": column 0-based, row 1-based.
-func splitReference(ref string) (col, row int, ok bool) {
-	i := 0
-	for i < len(ref) && (ref[i] >= 'A' && ref[i] <= 'Z' || ref[i] >= 'a' && ref[i] <= 'z') {
-		i++
+// finishCell keeps what was read. A value beside inline text is a leftover of
+// the writing program, inline text beside a value of another kind too.
+func (s *scanner) finishCell() error {
+	c := &s.cell
+	if c.isIn && (c.kind == inlined || !c.hasValue) {
+		return s.put(inlined, c.style, c.inline)
 	}
-	col, ok = ColumnIndex(ref[:i])
-	if !ok {
-		return 0, 0, false
+	return s.put(c.kind, c.style, c.value)
+}
+
+// put keeps the cell in the current column; b may be overwritten.
+func (s *scanner) put(k kind, style int, b []byte) error {
+	if len(b) == 0 {
+		return nil
 	}
-	row, err := strconv.Atoi(ref[i:])
-	return col, row, err == nil && row > 0 && row <= maxRows
+	i := s.cell.column
+	if i >= maxColumns {
+		return s.putFar(k, style, b)
+	}
+	for len(s.row.Cells) <= i {
+		s.row.Cells = append(s.row.Cells, Cell{})
+	}
+	c := &s.row.Cells[i]
+	if err := s.convert(c, k, style, b); err != nil {
+		return err
+	}
+	if c.Kind == Empty {
+		s.row.Cells = s.row.Cells[:i]
+	}
+	return nil
+}
+
+// putFar refuses a cell beyond the columns that are read, unless it is empty.
+func (s *scanner) putFar(k kind, style int, b []byte) error {
+	var c Cell
+	if err := s.convert(&c, k, style, b); err != nil || c.Kind == Empty {
+		return err
+	}
+	return s.tooWide(maxColumns)
+}
+
+func (s *scanner) finishRow() error {
+	s.inRow = false
+	s.last = s.row.Number
+	s.count++
+	if len(s.row.Cells) == 0 {
+		return nil
+	}
+	s.stopped = s.visit(&s.row)
+	return s.stopped
+}
+
+func (s *scanner) merge() error {
+	if !s.merging {
+		return nil
+	}
+	a, b, _ := bytes.Cut([]byte(s.attr("ref")), []byte(":"))
+	c1, r1, ok1 := splitReference(a)
+	c2, r2, ok2 := splitReference(b)
+	if len(s.merges) >= maxMerges {
+		return &BadFile{"too-big", fmt.Sprintf("sheet %q has more than %d merged ranges", s.name, int(maxMerges)), "take the merging off and save again"}
+	}
+	if ok1 && ok2 {
+		s.merges = append(s.merges, Merge{min(r1, r2), max(r1, r2), min(c1, c2), max(c1, c2)})
+	}
+	return nil
 }

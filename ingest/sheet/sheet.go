@@ -71,7 +71,7 @@ type Info struct {
 	Other  string // not empty: no sheet of cells, but such as "a chart"
 }
 
-// Book is an open spreadsheet file. A faster reader need only offer this.
+// Book is an open spreadsheet file.
 type Book interface {
 	Sheets() []Info
 	// Verify reads sheet i to its end and calls visit for every row that has
@@ -97,7 +97,8 @@ const (
 	maxCellBytes  = 1 << 20
 	maxMerges     = 200e3
 	maxSheets     = 1000
-	maxColumns    = 4096
+	maxColumns    = 4096    // that hold something
+	sheetColumns  = 1 << 14 // columns of an .xlsx sheet, by its format
 	maxRows       = 1 << 20 // rows of an .xlsx sheet, by its format
 )
 
@@ -170,11 +171,13 @@ func SerialDate(serial float64, from1904 bool) (string, bool) {
 }
 
 // formatNumber writes a number as people write ids: no exponent, no ".0".
-func formatNumber(v float64) string {
+func formatNumber(v float64) string { return string(appendNumber(nil, v)) }
+
+func appendNumber(b []byte, v float64) []byte {
 	if math.Abs(v) >= 1e21 {
-		return strconv.FormatFloat(v, 'g', -1, 64)
+		return strconv.AppendFloat(b, v, 'g', -1, 64)
 	}
-	return strconv.FormatFloat(v, 'f', -1, 64)
+	return strconv.AppendFloat(b, v, 'f', -1, 64)
 }
 
 func malformed(name string, row int, err error) error {
