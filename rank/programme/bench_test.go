@@ -67,6 +67,9 @@ func BenchmarkSolve(b *testing.B) {
 		{"small budget", Options{Budgets: []float64{math.Round(all / 1e5)}}},
 		{"shares", Options{Budgets: []float64{math.Round(all / 50), math.Round(all / 50)}, MinShare: map[string]float64{"North": 0.4, "Hill": 0.3}}},
 		{"capacities", Options{Budgets: []float64{math.Round(all / 50), math.Round(all / 50), math.Round(all / 60)}, Capacities: []Capacity{{Measures: 1, Buildings: 500}, {Measures: 6, Buildings: 2000}}}},
+		// Few buildings of many: where a plan is improved longest.
+		{"small budgets, shares, capacities", Options{Budgets: []float64{math.Round(all / 1e5), math.Round(all / 2e5), math.Round(all / 1e5), math.Round(all / 2e5), math.Round(all / 1e5)},
+			MinShare: map[string]float64{"North": 0.4, "Hill": 0.3}, Capacities: []Capacity{{Measures: 1, Buildings: 3}, {Measures: 6, Buildings: 10}}}},
 	} {
 		b.Run(c.name, func(b *testing.B) {
 			b.ReportAllocs()

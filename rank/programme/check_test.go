@@ -21,7 +21,7 @@ func example() []Building {
 
 func relaxed(t *testing.T, buildings []Building, opt Options) (*problem, *relaxation) {
 	t.Helper()
-	p, err := newProblem(context.Background(), buildings, opt)
+	p, err := newProblem(context.Background(), buildings, opt, false)
 	if err != nil {
 		t.Fatal(err)
 	}

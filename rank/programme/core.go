@@ -33,13 +33,14 @@ type state struct {
 // could deviate and still beat what there is. Of two states the one that costs no
 // more and is worth no less stays.
 //
-// at gives the option of class k by position. It returns a better choice than one
-// worth floor, or nil, and whether no other can be better than that.
+// at gives the option of class k by position. It returns a choice worth more than
+// floor that costs from least to money, or nil, and whether no other can be better
+// than that; the latter only holds with a least of 0.
 //
 // Source: Kellerer, Pferschy and Pisinger, Knapsack Problems (2004), 11.4.2, after
 // D. Pisinger, A minimal algorithm for the multiple-choice knapsack problem,
 // European Journal of Operational Research 83 (1995) 394-410.
-func core(classes []class, at func(k int, pos int32) *option, money, price, floor float64) ([]int32, bool) {
+func core(classes []class, at func(k int, pos int32) *option, least, money, price, floor float64) ([]int32, bool) {
 	worth := func(o *option) float64 { return o.value - float64(price*o.cost) }
 	bound := price * money
 	start := state{from: -1}
@@ -75,7 +76,7 @@ func core(classes []class, at func(k int, pos int32) *option, money, price, floo
 	states := []state{start}
 	found, foundLayer := state{from: -1, opt: -1}, -1
 	consider := func(s state, layer int) {
-		if s.cost <= money && s.value > floor {
+		if s.cost <= money && s.cost >= least && s.value > floor {
 			floor, found, foundLayer = s.value, s, layer
 		}
 	}
@@ -185,7 +186,7 @@ func (s *schedule) resolve(y int32, g int32) (better, complete bool) {
 	}
 	money := spent + room
 	at := func(k int, pos int32) *option { return p.option(buildings[k], classes[k].opts[pos]) }
-	got, complete := core(classes, at, money, knapsackPrice(classes, at, money), now)
+	got, complete := core(classes, at, 0, money, knapsackPrice(classes, at, money), now)
 	if got == nil {
 		return false, complete
 	}

@@ -33,7 +33,7 @@ func Curve(ctx context.Context, buildings []Building, points int) ([]CurvePoint,
 		}
 		all += most
 	}
-	p, err := newProblem(ctx, buildings, Options{Budgets: []float64{min(2*all+1, math.MaxFloat64)}})
+	p, err := newProblem(ctx, buildings, Options{Budgets: []float64{min(2*all+1, math.MaxFloat64)}}, false)
 	if err != nil {
 		return nil, err
 	}
@@ -70,13 +70,12 @@ func spaced(corners []CurvePoint, points int) []CurvePoint {
 	for n := range points {
 		b := first.Budget + float64((last.Budget-first.Budget)*float64(n)/float64(points-1))
 		// The last corner at or below b.
-		k, found := slices.BinarySearchFunc(corners, b, func(c CurvePoint, b float64) int {
+		k, _ := slices.BinarySearchFunc(corners, b, func(c CurvePoint, b float64) int {
 			if c.Budget <= b {
 				return -1
 			}
 			return 1
 		})
-		_ = found
 		c := corners[k-1]
 		out = append(out, CurvePoint{b, c.Value + float64(c.Marginal*(b-c.Budget)), c.Marginal})
 	}

@@ -11,7 +11,7 @@ import (
 // does not depend on the machine.
 const (
 	mostRounds    = 8
-	mostExchanges = 5_000_000
+	mostExchanges = 20_000_000
 	mostNodes     = 1_000_000
 )
 
@@ -145,7 +145,7 @@ func (s *schedule) exchange(r *relaxation, tries int) int {
 			}
 			s.set(i, up.opt, up.year)
 			for _, l := range movable {
-				if tries--; tries <= 0 {
+				if tries -= len(moves[l]); tries <= 0 {
 					break
 				}
 				if l == i {
@@ -158,7 +158,6 @@ func (s *schedule) exchange(r *relaxation, tries int) int {
 					if g <= best.gain || up.loss+down.loss > most || s.same(l, down) {
 						continue
 					}
-					tries--
 					s.set(l, down.opt, down.year)
 					if s.feasible() {
 						best = pair{up, down, l, g}
@@ -219,17 +218,18 @@ func (s *schedule) search(r *relaxation, nodes int) bool {
 		return c
 	}
 	slices.SortStableFunc(order, func(a, b int) int { return cmp.Compare(dearest(b), dearest(a)) })
-	var deeper func(k int, bound float64)
-	deeper = func(k int, bound float64) {
+	var deeper func(k int, bound, value float64)
+	deeper = func(k int, bound, value float64) {
 		if k == len(order) {
-			if v := t.value(); v > floor {
-				floor = v
+			if value > floor {
+				floor = value
 				copyPlan(s, t)
 			}
 			return
 		}
 		i := order[k]
 		wasOpt, wasYear := t.choice[i], t.year[i]
+		rest := value - t.at(i).value
 		for n, m := range moves[i] {
 			if bound-m.loss <= floor {
 				break
@@ -241,7 +241,7 @@ func (s *schedule) search(r *relaxation, nodes int) bool {
 				continue
 			}
 			t.set(i, m.opt, m.year)
-			deeper(k+1, bound-m.loss)
+			deeper(k+1, bound-m.loss, rest+p.option(i, m.opt).value)
 			if wasYear < 0 {
 				t.remove(i)
 				t.choice[i] = wasOpt
@@ -250,7 +250,7 @@ func (s *schedule) search(r *relaxation, nodes int) bool {
 			}
 		}
 	}
-	deeper(0, bound)
+	deeper(0, bound, t.value())
 	return nodes >= 0
 }
 

@@ -32,7 +32,7 @@ type problem struct {
 	budgets  []float64 // each year's own
 	limit    []float64 // money that may be spent in year y, or up to year y with carry
 	total    float64   // over all years
-	slack    float64   // by how much total is below the budgets' sum at most
+	slack    float64   // by how much what is left of total may be too little, through rounding
 	carry    bool
 	grid     float64
 	masks    []uint64 // sets of capacities that options need; masks[0] is none
@@ -95,7 +95,7 @@ func (f *faults) err() error { return errors.Join(f.errs...) }
 
 func finite(x float64) bool { return !math.IsNaN(x) && !math.IsInf(x, 0) }
 
-func newProblem(ctx context.Context, buildings []Building, opt Options) (*problem, error) {
+func newProblem(ctx context.Context, buildings []Building, opt Options, strict bool) (*problem, error) {
 	p := &problem{
 		buildings: buildings, carry: opt.CarryOver, capacity: opt.Capacities, workers: opt.Workers,
 		budgets: slices.Clone(opt.Budgets),
@@ -114,7 +114,7 @@ func newProblem(ctx context.Context, buildings []Building, opt Options) (*proble
 	if err := f.err(); err != nil {
 		return nil, err // the rest would be misled
 	}
-	p.layGrid()
+	p.layGrid(strict)
 	p.reserve(opt)
 	if err := p.gather(ctx); err != nil {
 		return nil, fmt.Errorf("programme of %d buildings: %w", len(buildings), err)
@@ -173,7 +173,7 @@ func (p *problem) checkOptions(f *faults, opt Options) {
 	}
 	// Shares are given in decimals: ten times 0.1 is 1.
 	if sum > 1+1e-9 {
-		f.add("share", "shares of the districts sum to %g: they must not exceed 1", sum)
+		f.add("share", "shares of the districts sum to %.4g: they must not exceed 1", sum)
 	}
 }
 
@@ -222,14 +222,15 @@ func (p *problem) checkBuildings(f *faults) {
 
 // layGrid finds the grid of costs: a power of two so fine that the sum of all
 // budgets is at most 2^50 of it, so that sums and differences of money on the grid
-// are exact in any order. Costs are rounded up to it and budgets down.
+// are exact in any order. Costs are rounded to it.
 //
-// Where that changes any, budgets are lowered by what rounding can add to the
-// floating-point sum of n costs, n u sum(c) with the unit roundoff u = 2^-53
-// (N. Higham, Accuracy and Stability of Numerical Algorithms, 2nd ed. 2002, 4.2),
-// taken twice. It is far below what matters: 2e-11 of the budget for 100,000
-// buildings.
-func (p *problem) layGrid() {
+// Where that changes any, sums on the grid and floating-point sums of the costs
+// differ by at most n (2^-53 sum + grid/2) for n costs (N. Higham, Accuracy and
+// Stability of Numerical Algorithms, 2nd ed. 2002, 4.2). Limits are raised by that,
+// taken four times, so that nothing that fits is lost; or, if strict, lowered, so
+// that nothing is exceeded. It is far below what matters: 2e-10 of the money for
+// 100,000 buildings.
+func (p *problem) layGrid(strict bool) {
 	sum := sumOf(p.budgets)
 	p.grid = math.SmallestNonzeroFloat64
 	if sum > 0 {
@@ -239,7 +240,7 @@ func (p *problem) layGrid() {
 	exact := true
 	for i := range p.buildings {
 		for _, pk := range p.buildings[i].Packages {
-			exact = exact && (pk.Cost > sum || p.up(pk.Cost) == pk.Cost)
+			exact = exact && (pk.Cost > sum || p.near(pk.Cost) == pk.Cost)
 		}
 	}
 	for _, b := range p.budgets {
@@ -247,20 +248,21 @@ func (p *problem) layGrid() {
 	}
 	guard := 0.0
 	if !exact {
-		guard = float64(p.size()+1) * 0x1p-52
+		guard = 2 * float64(p.size()+1) * p.grid
+		p.slack = 2 * guard * float64(p.years())
 	}
 	p.limit = make([]float64, p.years())
 	for y, b := range p.budgets {
-		p.limit[y] = p.down(b - float64(b*guard))
+		p.limit[y] = p.down(b) + guard
+		if strict {
+			p.limit[y] = max(0, p.down(b)-guard)
+		}
 		p.total += p.limit[y]
 	}
 	if p.carry {
 		for y := 1; y < len(p.limit); y++ {
 			p.limit[y] += p.limit[y-1]
 		}
-	}
-	if !exact {
-		p.slack = 2*float64(sum*guard) + float64(p.size()+p.years())*p.grid
 	}
 }
 
@@ -272,7 +274,7 @@ func sumOf(xs []float64) float64 {
 	return sum
 }
 
-func (p *problem) up(x float64) float64   { return math.Ceil(x/p.grid) * p.grid }
+func (p *problem) near(x float64) float64 { return math.RoundToEven(x/p.grid) * p.grid }
 func (p *problem) down(x float64) float64 { return math.Floor(x/p.grid) * p.grid }
 
 // reserve keeps money for districts.
@@ -280,12 +282,13 @@ func (p *problem) reserve(opt Options) {
 	p.groups = []group{{}}
 	place := map[string]int32{}
 	p.pool = p.total
+	sum := sumOf(p.budgets)
 	for _, name := range sortedKeys(opt.MinShare) {
 		share := opt.MinShare[name]
 		if share == 0 {
 			continue
 		}
-		r := float64(p.total * share)
+		r := float64(sum * share)
 		// 0.1 of 30 is 3, though not in binary.
 		if n := math.Round(r); math.Abs(r-n) < 1e-9*max(1, n) {
 			r = n
@@ -332,7 +335,7 @@ func (p *problem) gather(ctx context.Context) error {
 				if b.Never || pk.Cost > room || len(b.MustPackages) > 0 && !slices.Contains(b.MustPackages, j) {
 					continue
 				}
-				if cost := p.up(pk.Cost); cost <= room {
+				if cost := p.near(pk.Cost); cost <= room {
 					some = append(some, option{cost, pk.Value, int32(j), masks[p.needs(pk.Measures)]})
 				}
 			}
@@ -431,9 +434,9 @@ func (p *problem) checkMusts(f *faults) {
 		}
 	}
 	if sum > p.total {
-		f.add("budget", "must-do buildings cost %g at least, the budgets sum to %g", sum, p.total)
+		f.add("budget", "must-do buildings cost %.10g at least, the budgets sum to %.10g", sum, sumOf(p.budgets))
 	} else if over := p.pooled(group); over > p.pool {
-		f.add("share", "must-do buildings need %g beside the money kept for districts, of which there is %g", over, p.pool)
+		f.add("share", "must-do buildings need %.10g beside the money kept for districts, of which there is %.10g", over, p.pool)
 	}
 	for c, n := range always {
 		if most := p.capacity[c].Buildings * p.years(); n > most {

@@ -56,7 +56,8 @@ type Options struct {
 	// sum of the costs of a year's choices, in the order of Plan.Choices, is at most
 	// its budget.
 	Budgets []float64
-	// CarryOver lets money not spent in a year be spent in a later one.
+	// CarryOver lets money not spent in a year be spent in a later one. Then what is
+	// spent up to any year is at most what the budgets up to it sum to.
 	CarryOver bool
 	// MinShare keeps a share of the money of all years for the buildings of a
 	// district: others never spend it. What the district cannot use of it, as
@@ -115,25 +116,65 @@ const enough = 1e-3
 // dynamic programming over the core (Kellerer, Pferschy and Pisinger 2004, 11.4.2),
 // pairs of buildings change places, and small cases are searched through.
 func Solve(ctx context.Context, buildings []Building, opt Options) (*Plan, error) {
-	p, err := newProblem(ctx, buildings, opt)
+	var plan *Plan
+	for _, strict := range []bool{false, true} {
+		var err error
+		if plan, err = solve(ctx, buildings, opt, strict); err != nil {
+			return nil, err
+		}
+		if plan.within(opt) {
+			break // nearly always: otherwise a budget is exceeded by its last bits
+		}
+	}
+	return plan, nil
+}
+
+// within reports whether the budgets are held to the last bit.
+func (p *Plan) within(opt Options) bool {
+	cost, budget := 0.0, 0.0
+	for y, b := range opt.Budgets {
+		if !opt.CarryOver {
+			cost, budget = 0, 0
+		}
+		cost += p.Cost[y]
+		budget += b
+		if cost > budget {
+			return false
+		}
+	}
+	return true
+}
+
+func solve(ctx context.Context, buildings []Building, opt Options, strict bool) (*Plan, error) {
+	p, err := newProblem(ctx, buildings, opt, strict)
 	if err != nil {
 		return nil, err
 	}
 	r, err := p.relax(ctx)
 	if err != nil {
-		return nil, err
+		return nil, fmt.Errorf("programme of %d buildings: %w", len(buildings), err)
 	}
 	s := newSchedule(p)
 	if err := s.placeMusts(); err != nil {
 		return nil, err
 	}
-	s.place(p.pick(r))
+	pick := p.pick(r)
+	even := s.clone()
+	s.place(pick, false)
 	s.fill()
+	if p.years() > 1 && r.gap(s.value()) > enough {
+		even.place(pick, true)
+		even.fill()
+		if even.value() > s.value() {
+			s = even
+		}
+	}
 	optimal, err := s.improve(ctx, r)
 	if err != nil {
 		return nil, fmt.Errorf("programme of %d buildings: %w", len(buildings), err)
 	}
 	s.compact()
+	s.arrange()
 	return s.plan(r, optimal), nil
 }
 

@@ -41,6 +41,17 @@ func newSchedule(p *problem) *schedule {
 	return s
 }
 
+func (s *schedule) clone() *schedule {
+	c := *s
+	c.choice, c.year = slices.Clone(s.choice), slices.Clone(s.year)
+	c.spent, c.group = slices.Clone(s.spent), slices.Clone(s.group)
+	c.used = make([][]int32, len(s.used))
+	for y := range c.used {
+		c.used[y] = slices.Clone(s.used[y])
+	}
+	return &c
+}
+
 // at returns the option of a building, nothing where it has none yet.
 func (s *schedule) at(i int) *option {
 	if s.year[i] < 0 {
@@ -255,23 +266,29 @@ func (s *schedule) searchMusts(musts []int) bool {
 }
 
 // place gives buildings the options picked: the best value for money first, each
-// in the earliest year it fits in; what fits in none gets the dearest option below
-// that does.
-func (s *schedule) place(pick []int32) {
+// in the earliest year it fits in. Where that leaves too much over, as the cheap
+// ones take the capacities of the early years, it is spread evenly instead: the
+// dearest first, each in the emptiest year. What fits in none gets the dearest option
+// below that does.
+func (s *schedule) place(pick []int32, evenly bool) {
 	p := s.p
 	type item struct {
-		efficiency float64
-		building   int32
+		key      float64
+		building int32
 	}
 	var items []item
 	for i, j := range pick {
 		if o := p.option(i, j); o.pack >= 0 {
-			items = append(items, item{efficiency(o), int32(i)})
+			it := item{efficiency(o), int32(i)}
+			if evenly {
+				it.key = o.cost
+			}
+			items = append(items, it)
 		}
 	}
 	slices.SortFunc(items, func(a, b item) int {
-		if a.efficiency != b.efficiency {
-			return cmp.Compare(b.efficiency, a.efficiency)
+		if a.key != b.key {
+			return cmp.Compare(b.key, a.key)
 		}
 		return cmp.Compare(a.building, b.building)
 	})
@@ -281,12 +298,43 @@ func (s *schedule) place(pick []int32) {
 			if p.option(i, j).value <= s.at(i).value {
 				continue
 			}
-			if y := s.first(i, j); y >= 0 {
+			y := s.first(i, j)
+			if y >= 0 && evenly {
+				y = s.emptiest(i, j)
+			}
+			if y >= 0 {
 				s.set(i, j, y)
 				break
 			}
 		}
 	}
+}
+
+// emptiest finds the year with most money left that an option fits in, or -1. Where
+// it needs a capacity, most money for each building there still is capacity for: so
+// the cheap ones are left for years that have little.
+func (s *schedule) emptiest(i int, j int32) int32 {
+	best, most := int32(-1), math.Inf(-1)
+	mask := s.p.masks[s.p.option(i, j).mask]
+	for y := range s.spent {
+		if !s.fits(i, j, int32(y)) {
+			continue
+		}
+		left := s.p.limit[y] - s.spent[y]
+		free := math.MaxInt
+		for c, u := range s.used[y] {
+			if mask>>c&1 == 1 {
+				free = min(free, s.p.capacity[c].Buildings-int(u))
+			}
+		}
+		if mask != 0 {
+			left /= float64(max(1, free))
+		}
+		if left > most {
+			best, most = int32(y), left
+		}
+	}
+	return best
 }
 
 func efficiency(o *option) float64 {
@@ -352,47 +400,6 @@ func (s *schedule) fill() {
 				s.set(i, c.opt, y)
 			} else if y := s.first(i, c.opt); y >= 0 {
 				s.set(i, c.opt, y)
-			}
-		}
-	}
-}
-
-// compact moves buildings to earlier years where they fit, and where there are not
-// too many to look at all pairs, lets those that bring more for their money change
-// places with earlier ones.
-func (s *schedule) compact() {
-	if s.p.years() == 1 {
-		return
-	}
-	var done []int
-	for i := range s.choice {
-		if !s.idle(i) {
-			done = append(done, i)
-		}
-	}
-	slices.SortStableFunc(done, func(a, b int) int { return cmp.Compare(efficiency(s.at(b)), efficiency(s.at(a))) })
-	for _, i := range done {
-		if y := s.first(i, s.choice[i]); y >= 0 && y < s.year[i] {
-			s.set(i, s.choice[i], y)
-		}
-	}
-	if len(done) > 1000 {
-		return
-	}
-	for changed, rounds := true, 0; changed && rounds < 20; rounds++ {
-		changed = false
-		for k, a := range done {
-			for _, b := range done[k+1:] {
-				if s.year[a] <= s.year[b] || s.p.must[b] || efficiency(s.at(a)) == efficiency(s.at(b)) {
-					continue
-				}
-				y, z := s.year[a], s.year[b]
-				s.set(a, s.choice[a], z)
-				s.set(b, s.choice[b], y)
-				if changed = s.feasible() || changed; !s.feasible() {
-					s.set(a, s.choice[a], y)
-					s.set(b, s.choice[b], z)
-				}
 			}
 		}
 	}
