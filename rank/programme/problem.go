@@ -226,9 +226,9 @@ func (p *problem) checkBuildings(f *faults) {
 //
 // Where that changes any, sums on the grid and floating-point sums of the costs
 // differ by at most n (2^-53 sum + grid/2) for n costs (N. Higham, Accuracy and
-// Stability of Numerical Algorithms, 2nd ed. 2002, 4.2). Limits are raised by that,
-// taken four times, so that nothing that fits is lost; or, if strict, lowered, so
-// that nothing is exceeded. It is far below what matters: 2e-10 of the money for
+// Stability of Numerical Algorithms, 2nd ed. 2002, 4.2). Limits are raised by more
+// than three times that, so that nothing that fits is lost; or, if strict, lowered,
+// so that nothing is exceeded. It is far below what matters: 4e-10 of the money for
 // 100,000 buildings.
 func (p *problem) layGrid(strict bool) {
 	sum := sumOf(p.budgets)
