@@ -114,5 +114,5 @@ type Run struct {
 	Buildings   int
 	Failed      int
 	Files       []string // source files in the store at that time
-	Options     string   // what else decides the workbook, as JSON
+	Options     []byte   `json:"-"` // what else its workbook was written from, as the program keeps it
 }

@@ -10,7 +10,7 @@ create table kelvinrow.assumptions (
 );
 
 alter table kelvinrow.run
-    add column options text not null default ''; -- what else decides the workbook, as JSON
+    add column options bytea not null default ''; -- what else its workbook was written from, as the program keeps it
 
 alter table kelvinrow.assumptions enable row level security;
 alter table kelvinrow.assumptions force row level security;

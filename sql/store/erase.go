@@ -3,6 +3,7 @@ package store
 import (
 	"context"
 	"fmt"
+	"strings"
 
 	"github.com/jackc/pgx/v5"
 )
@@ -23,12 +24,17 @@ func (s *Store) Erase(ctx context.Context, portfolio, id string) error {
 			"delete from kelvinrow.finding where portfolio = $1 and building = $2",
 			"delete from kelvinrow.record where portfolio = $1 and building = $2",
 			"delete from kelvinrow.run_building where portfolio = $1 and id = $2",
+			// What runs keep beside quotes findings: their workbooks cannot be written
+			// again with those.
+			"update kelvinrow.run set options = '' where portfolio = $1 and $2 <> '' and options <> ''",
 		} {
 			tag, err := tx.Exec(ctx, sql, portfolio, id)
 			if err != nil {
 				return fmt.Errorf("erase building %s: %w", id, err)
 			}
-			removed += tag.RowsAffected()
+			if !strings.HasPrefix(sql, "update") {
+				removed += tag.RowsAffected()
+			}
 		}
 		if removed > 0 {
 			return nil
@@ -60,7 +66,12 @@ func (s *Store) Prune(ctx context.Context, portfolio string, keep int) (removed 
 			return err
 		}
 		tag, err := tx.Exec(ctx, "delete from kelvinrow.run where portfolio = $1 and run <= $2", portfolio, upTo)
+		if err != nil {
+			return err
+		}
 		removed = int(tag.RowsAffected())
+		_, err = tx.Exec(ctx, `delete from kelvinrow.assumptions a where a.portfolio = $1
+			and not exists (select from kelvinrow.run r where r.portfolio = $1 and r.assumptions = a.version)`, portfolio)
 		return err
 	})
 	if err != nil {

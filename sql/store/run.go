@@ -48,7 +48,7 @@ func (s *Store) saveRun(ctx context.Context, tx pgx.Tx, run *result.Run, buildin
 		select $1, coalesce((select max(run) from kelvinrow.run where portfolio = $1), 0) + 1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13
 		returning run`,
 		run.Portfolio, run.Time, run.Version, run.Climate, run.Assumptions, run.Inputs, run.Yardstick, run.Seed,
-		list(run.Measures), run.Buildings, run.Failed, list(run.Files), run.Options).Scan(&number)
+		list(run.Measures), run.Buildings, run.Failed, list(run.Files), bytes(run.Options)).Scan(&number)
 	if err != nil {
 		return err
 	}
@@ -57,6 +57,14 @@ func (s *Store) saveRun(ctx context.Context, tx pgx.Tx, run *result.Run, buildin
 	}
 	run.Number = number
 	return nil
+}
+
+// bytes makes an empty value of none: the column is never null.
+func bytes(b []byte) []byte {
+	if b == nil {
+		return []byte{}
+	}
+	return b
 }
 
 func list(s []string) []string {

@@ -2,6 +2,8 @@ package cli
 
 import (
 	"fmt"
+	"path/filepath"
+	"strconv"
 	"text/tabwriter"
 
 	"github.com/spf13/cobra"
@@ -71,6 +73,61 @@ func (a *app) runs() *cobra.Command {
 		},
 	}
 	c.Flags().BoolVar(&asJSON, "json", false, "print as JSON")
+	c.AddCommand(a.runsWrite(), a.runsPrune())
+	return c
+}
+
+func (a *app) runsWrite() *cobra.Command {
+	var out string
+	c := &cobra.Command{
+		Use:     "write RUN",
+		Short:   "Write the workbook of a stored run again, the same as it was",
+		Example: "  kelvinrow runs write 3 -o ranked-of-run-3.xlsx",
+		Args:    args(cobra.ExactArgs(1)),
+		RunE: func(c *cobra.Command, given []string) error {
+			n, err := strconv.Atoi(given[0])
+			if err != nil || n < 1 {
+				return usagef("%q is not the number of a run (see: kelvinrow runs)", given[0])
+			}
+			if filepath.Ext(out) != ".xlsx" {
+				return usagef("--output %s: the workbook's name must end in .xlsx", out)
+			}
+			ctx := c.Context()
+			return a.within(ctx, func(s *pipeline.Session) error {
+				run, err := s.WriteRun(ctx, n, out)
+				if err == nil && !a.quiet {
+					fmt.Fprintf(a.out, "Run %-8d %s\n", run.Number, out)
+				}
+				return err
+			})
+		},
+	}
+	c.Flags().StringVarP(&out, "output", "o", "ranked.xlsx", "`file` for the workbook")
+	return c
+}
+
+func (a *app) runsPrune() *cobra.Command {
+	var keep int
+	c := &cobra.Command{
+		Use:     "prune",
+		Short:   "Drop all but the newest runs",
+		Example: "  kelvinrow runs prune --keep 5",
+		Args:    args(cobra.NoArgs),
+		RunE: func(c *cobra.Command, _ []string) error {
+			if keep < 1 {
+				return usagef("--keep %d: at least the newest run stays", keep)
+			}
+			ctx := c.Context()
+			return a.within(ctx, func(s *pipeline.Session) error {
+				n, err := s.Store.Prune(ctx, a.portfolio, keep)
+				if err == nil && !a.quiet {
+					fmt.Fprintf(a.out, "Dropped      %d runs of portfolio %q\n", n, a.portfolio)
+				}
+				return err
+			})
+		},
+	}
+	c.Flags().IntVar(&keep, "keep", 10, "how many of the newest runs stay")
 	return c
 }
 

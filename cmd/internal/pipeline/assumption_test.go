@@ -98,3 +98,43 @@ func TestAssumptionsStayInForce(t *testing.T) {
 		t.Errorf("a negative price: %v", err)
 	}
 }
+
+// The workbook of a stored run is written again byte for byte, whatever was loaded
+// and assumed since; after an erasure it is refused.
+func TestStoredRunIsWrittenAgain(t *testing.T) {
+	b := newBench(t)
+	source := b.write("stock.csv", "id;use;year built;floor area (m2);district\nA-1;terraced house;1930;95;North\nA-2;school;1972;2400;South\nA-3;office;1985;-5;South\n")
+	b.load(LoadOptions{Files: []string{source}, Kind: building.Registered})
+	first := filepath.Join(b.dir, "first.xlsx")
+	out, err := b.s.Rank(t.Context(), RankOptions{Out: first, Yardstick: rank.NPV, Top: 1, Title: "Two buildings",
+		Programme: ProgrammeOptions{Budgets: []float64{2e5, 1e5}, By: rank.NPV}}, nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if out.Programme == nil || len(out.Programme.Chosen) == 0 {
+		t.Fatal("no programme")
+	}
+	b.load(LoadOptions{Files: []string{b.write("more.csv", "id;use;year built;floor area (m2)\nA-2;school;1972;3400\nA-9;office;1990;800\n")}, Kind: building.Surveyed})
+	b.s.Changes = []string{"gas.price=0.3"}
+	if _, err := b.s.Rank(t.Context(), RankOptions{Out: filepath.Join(b.dir, "second.xlsx"), Yardstick: rank.Default}, nil); err != nil {
+		t.Fatal(err)
+	}
+	again := filepath.Join(b.dir, "again.xlsx")
+	if _, err := b.s.WriteRun(t.Context(), 1, again); err != nil {
+		t.Fatal(err)
+	}
+	was, _ := os.ReadFile(first)
+	is, _ := os.ReadFile(again)
+	if len(was) == 0 || string(was) != string(is) {
+		t.Errorf("%d bytes, then %d: not the same workbook", len(was), len(is))
+	}
+	if _, err := b.s.WriteRun(t.Context(), 7, again); err == nil {
+		t.Error("a run that never was is written")
+	}
+	if err := b.s.Store.Erase(t.Context(), "p", "A-2"); err != nil {
+		t.Fatal(err)
+	}
+	if _, err := b.s.WriteRun(t.Context(), 1, again); !errors.Is(err, errBare) {
+		t.Errorf("after an erasure: %v", err)
+	}
+}

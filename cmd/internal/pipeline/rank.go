@@ -108,6 +108,9 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 		Climate: basis.Climate, Top: opt.Top, Yardstick: opt.Yardstick, Title: opt.Title,
 		Programme: plan,
 	}
+	if run.Options, err = keep(in); err != nil {
+		return nil, err
+	}
 	var file *staged
 	defer func() { file.discard() }()
 	began = time.Now()
