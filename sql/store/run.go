@@ -48,7 +48,7 @@ func (s *Store) saveRun(ctx context.Context, tx pgx.Tx, run *result.Run, buildin
 		select $1, coalesce((select max(run) from kelvinrow.run where portfolio = $1), 0) + 1, $2, $3, $4, $5, $6, $7, $8, $9, $10, $11, $12, $13
 		returning run`,
 		run.Portfolio, run.Time, run.Version, run.Climate, run.Assumptions, run.Inputs, run.Yardstick, run.Seed,
-		list(run.Measures), run.Buildings, run.Failed, list(run.Files), bytes(run.Options)).Scan(&number)
+		list(run.Measures), run.Buildings, run.Failed, list(run.Files), notNull(run.Options)).Scan(&number)
 	if err != nil {
 		return err
 	}
@@ -59,8 +59,8 @@ func (s *Store) saveRun(ctx context.Context, tx pgx.Tx, run *result.Run, buildin
 	return nil
 }
 
-// bytes makes an empty value of none: the column is never null.
-func bytes(b []byte) []byte {
+// notNull makes an empty value of none: the column is never null.
+func notNull(b []byte) []byte {
 	if b == nil {
 		return []byte{}
 	}
