@@ -74,19 +74,22 @@ func list(s []string) []string {
 	return s
 }
 
-const runColumns = "portfolio, run, ran_at, version, climate, assumptions, inputs, yardstick, seed, measures, buildings, failed, files, options"
+const runColumns = "portfolio, run, ran_at, version, climate, assumptions, inputs, yardstick, seed, measures, buildings, failed, files"
 
 func scanRun(row pgx.CollectableRow) (r result.Run, err error) {
 	err = row.Scan(&r.Portfolio, &r.Number, &r.Time, &r.Version, &r.Climate, &r.Assumptions, &r.Inputs, &r.Yardstick,
 		&r.Seed, &r.Measures, &r.Buildings, &r.Failed, &r.Files, &r.Options)
+	if len(r.Options) == 0 {
+		r.Options = nil
+	}
 	r.Time = r.Time.UTC()
 	return r, err
 }
 
-// Runs lists the runs of a portfolio, oldest first.
+// Runs lists the runs of a portfolio, oldest first, without their options.
 func (s *Store) Runs(ctx context.Context, portfolio string) (out []result.Run, err error) {
 	err = s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
-		rows, err := tx.Query(ctx, "select "+runColumns+" from kelvinrow.run where portfolio = $1 order by run", portfolio)
+		rows, err := tx.Query(ctx, "select "+runColumns+", ''::bytea from kelvinrow.run where portfolio = $1 order by run", portfolio)
 		if err != nil {
 			return err
 		}
@@ -101,7 +104,7 @@ func (s *Store) Run(ctx context.Context, portfolio string, number int) (*result.
 	var run result.Run
 	var buildings []result.Building
 	err := s.within(ctx, portfolio, true, func(tx pgx.Tx) error {
-		rows, err := tx.Query(ctx, "select "+runColumns+" from kelvinrow.run where portfolio = $1 and run = $2", portfolio, number)
+		rows, err := tx.Query(ctx, "select "+runColumns+", options from kelvinrow.run where portfolio = $1 and run = $2", portfolio, number)
 		if err != nil {
 			return err
 		}
