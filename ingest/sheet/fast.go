@@ -39,6 +39,7 @@ type simpleCell struct {
 	column, style int
 	kind          kind
 	empty         bool
+	seen          uint8  // attributes, r and the letters after it
 	text          []byte // within the buffer
 }
 
@@ -56,23 +57,7 @@ func (c *simpleCell) tag(b []byte, row int) int {
 			}
 			i++
 		}
-		v := b[from:i]
-		ok := true
-		switch name {
-		case 'r':
-			var n int
-			before := c.column
-			c.column, n, ok = splitReference(v)
-			ok = ok && n == row && c.column >= before
-		case 't':
-			ok = c.kind == numeric
-			c.kind = kindOf(v)
-		case 's':
-			c.style, _ = digits(v)
-		default:
-			ok = false
-		}
-		if !ok {
+		if !c.attribute(name, b[from:i], row) {
 			return 0
 		}
 		i++
@@ -85,6 +70,27 @@ func (c *simpleCell) tag(b []byte, row int) int {
 		return i + 2
 	}
 	return 0
+}
+
+// attribute takes one of three attributes, each once.
+func (c *simpleCell) attribute(name byte, v []byte, row int) bool {
+	if name < 'r' || name > 't' || c.seen&(1<<(name-'r')) != 0 {
+		return false
+	}
+	c.seen |= 1 << (name - 'r')
+	switch name {
+	case 'r':
+		col, n, ok := splitReference(v)
+		if !ok || n != row || col < c.column {
+			return false
+		}
+		c.column = col
+	case 's':
+		c.style, _ = digits(v)
+	case 't':
+		c.kind = kindOf(v)
+	}
+	return true
 }
 
 // content takes what is between the tags, and the end tag.

@@ -2,7 +2,6 @@ package sheet
 
 import (
 	"fmt"
-	"strconv"
 )
 
 // format is what a number format makes of a number.
@@ -37,7 +36,7 @@ type styleReader struct {
 func (r *styleReader) start(t *tokens) error {
 	switch string(t.local) {
 	case "numFmt":
-		if id, err := strconv.Atoi(t.attr("numFmtId")); err == nil && len(r.custom) < maxFormats {
+		if id, ok := digits([]byte(t.attr("numFmtId"))); ok && len(r.custom) < maxFormats {
 			r.custom[id] = formatOf(t.attr("formatCode"))
 		}
 	case "cellXfs":
@@ -51,12 +50,11 @@ func (r *styleReader) start(t *tokens) error {
 		if len(r.formats) == maxFormats {
 			return &BadFile{"too-big", fmt.Sprintf("the workbook has more than %d cell styles", maxFormats), "copy the tables into a new workbook"}
 		}
-		id, err := strconv.Atoi(t.attr("numFmtId"))
-		f, ok := r.custom[id]
-		if err != nil {
-			f = plain
-		} else if !ok {
-			f = builtIn(id)
+		f := plain
+		if id, ok := digits([]byte(t.attr("numFmtId"))); ok {
+			if f, ok = r.custom[id]; !ok {
+				f = builtIn(id)
+			}
 		}
 		r.formats = append(r.formats, f)
 	}
