@@ -378,28 +378,52 @@ func idText(c sheet.Cell) string {
 
 var totals = strings.Fields("total totals totale totaal totalt totalsumme sum summe summa somme suma gesamt gesamtsumme insgesamt subtotal zwischensumme average averages durchschnitt mittelwert moyenne gemiddelde medel gjennomsnitt media")
 
+// headerAgain reports whether a row repeats the header, as printed lists do.
+func (r *rowReader) headerAgain(in *sheet.Row, filled int) bool {
+	same := 0
+	for j := range r.layout.Columns {
+		k := &r.layout.Columns[j]
+		if c := in.Cell(k.Index); !c.Blank() && k.Header == strings.TrimSpace(c.Text) {
+			same++
+		} else if !c.Blank() {
+			return false
+		}
+	}
+	return same > 1 && same == filled
+}
+
+// textsBeside reports whether a row has text beside its first cell.
+func textsBeside(in *sheet.Row) bool {
+	first := true
+	for _, c := range in.Cells {
+		if c.Blank() {
+			continue
+		}
+		if first {
+			first = false
+			continue
+		}
+		if _, st := cell.ParseNumber(c.Text, cell.Undecided); st == cell.Bad {
+			return true
+		}
+	}
+	return false
+}
+
 // noBuilding reports rows that are none of data: totals, a repeated header,
 // remarks below the table.
 func (r *rowReader) noBuilding(in *sheet.Row, id string) bool {
 	filled, first := 0, ""
-	same, texts := 0, 0
-	for i, c := range in.Cells {
+	for _, c := range in.Cells {
 		if c.Blank() {
 			continue
 		}
 		filled++
 		if first == "" {
 			first = c.Text
-		} else if _, st := cell.ParseNumber(c.Text, cell.Undecided); st == cell.Bad {
-			texts++
-		}
-		for j := range r.layout.Columns {
-			if k := &r.layout.Columns[j]; k.Index == i && k.Header == strings.TrimSpace(c.Text) {
-				same++
-			}
 		}
 	}
-	if same > 1 && same == filled {
+	if r.headerAgain(in, filled) {
 		return true
 	}
 	f := cell.Fold(first)
@@ -409,7 +433,7 @@ func (r *rowReader) noBuilding(in *sheet.Row, id string) bool {
 	}
 	for _, w := range totals {
 		// "Total House" with a name beside it is a building.
-		if word == w && (id == "" || cell.Fold(id) == f) && (f == w || texts == 0) {
+		if word == w && (id == "" || cell.Fold(id) == f) && (f == w || !textsBeside(in)) {
 			r.found.add(finding.Finding{Severity: finding.Note, Check: "total-row", Row: in.Number, Raw: first, Text: fmt.Sprintf("the row %q is a total and no building", first)})
 			return true
 		}

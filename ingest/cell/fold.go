@@ -5,6 +5,7 @@ package cell
 import (
 	"strings"
 	"unicode"
+	"unicode/utf8"
 
 	"golang.org/x/text/unicode/norm"
 )
@@ -15,6 +16,13 @@ var letters = strings.NewReplacer("ß", "ss", "ø", "o", "æ", "a", "œ", "o", "
 // Fold brings text to the form in which words are compared: lower case, no
 // diacritics, no punctuation, single spaces, and "ä" the same as "ae".
 func Fold(s string) string {
+	if folded, ok := foldASCII(s); ok {
+		return folded
+	}
+	return foldAny(s)
+}
+
+func foldAny(s string) string {
 	s = letters.Replace(strings.ToLower(s))
 	var b strings.Builder
 	space := false
@@ -33,6 +41,44 @@ func Fold(s string) string {
 		}
 	}
 	return umlauts.Replace(b.String())
+}
+
+// foldASCII is Fold of plain text, which most is; false for anything else.
+func foldASCII(s string) (string, bool) {
+	for i := 0; i < len(s); i++ {
+		if s[i] >= utf8.RuneSelf || s[i] == '^' { // "m^2" is "m2"
+			return "", false
+		}
+	}
+	var buf [64]byte
+	b := buf[:0]
+	space := false
+	umlaut := false // the last letter written may be the first of "ae", "oe", "ue"
+	for i := 0; i < len(s); i++ {
+		c := s[i]
+		switch {
+		case c >= 'A' && c <= 'Z':
+			c += 'a' - 'A'
+		case c >= 'a' && c <= 'z', c >= '0' && c <= '9':
+		case c == '\'' || c == '`':
+			continue
+		default:
+			space = true
+			continue
+		}
+		if space && len(b) > 0 {
+			b = append(b, ' ')
+			umlaut = false
+		}
+		space = false
+		if c == 'e' && umlaut {
+			umlaut = false
+			continue
+		}
+		b = append(b, c)
+		umlaut = c == 'a' || c == 'o' || c == 'u'
+	}
+	return string(b), true
 }
 
 var umlauts = strings.NewReplacer("ae", "a", "oe", "o", "ue", "u")

@@ -57,3 +57,15 @@ func isASCII(s string) bool {
 	}
 	return true
 }
+
+// Plain text is folded by its own way, to the same.
+func FuzzFold(f *testing.F) {
+	for _, s := range []string{"", "Haus-Nr. 3", "aee ueue Aoe'e", "a e", "Öl", "ÅRSVÄRME", "co-oe`e", "x\x00y", "kWh/m^2", "m^3 & m^2"} {
+		f.Add(s)
+	}
+	f.Fuzz(func(t *testing.T, s string) {
+		if plain, ok := foldASCII(s); ok && plain != foldAny(s) {
+			t.Errorf("%q is %q in plain text, %q else", s, plain, foldAny(s))
+		}
+	})
+}

@@ -48,7 +48,7 @@ var absent = func() map[string]bool {
 }()
 
 // IsAbsent reports whether the text is a way to write nothing: "", "-", "?", "n/a".
-func IsAbsent(s string) bool { return absent[Fold(s)] && !hasDigit(s) }
+func IsAbsent(s string) bool { return !hasDigit(s) && absent[Fold(s)] }
 
 func hasDigit(s string) bool {
 	return strings.IndexFunc(s, unicode.IsDigit) >= 0
