@@ -140,7 +140,7 @@ var tens = [...]float64{1, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10, 1e
 
 // decimal takes a number of up to fifteen digits without an exponent: as both
 // its digits and the power of ten are exact in a float64, so is the rounding of
-// their quotient. same says that formatNumber would write it as it stands,
+// their quotient. same says that appendNumber would write it as it stands,
 // which it does with so few digits if none is idle.
 func decimal(b []byte) (v float64, same, ok bool) {
 	i := 0

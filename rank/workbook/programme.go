@@ -93,9 +93,9 @@ func (b *book) programmePage(p *Programme, chosen *spread) error {
 	const last = 8
 	sentence := func(text string) {
 		s.next(heightOf(fontSize, wrappedText{text, 12*2 + 14*6}) + 1)
-		s.r.text(1, b.st.wrapped(), text)
+		s.r.text(1, b.st.prose(), text)
 		for c := 2; c <= last; c++ {
-			s.r.blank(c, b.st.wrapped())
+			s.r.blank(c, b.st.prose())
 		}
 		if s.err == nil {
 			s.err = b.f.MergeCell(pg.name, cellName(1, s.row), cellName(last, s.row))
