@@ -170,7 +170,6 @@ func SerialDate(serial float64, from1904 bool) (string, bool) {
 	return time.Date(1899, 12, 30, 0, 0, 0, 0, time.UTC).AddDate(0, 0, day).Format("2006-01-02"), true
 }
 
-
 func appendNumber(b []byte, v float64) []byte {
 	if math.Abs(v) >= 1e21 {
 		return strconv.AppendFloat(b, v, 'g', -1, 64)
