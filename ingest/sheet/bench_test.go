@@ -9,10 +9,13 @@ import (
 	"os"
 	"path/filepath"
 	"runtime"
+	"strings"
 	"testing"
 	"time"
 
 	"github.com/xuri/excelize/v2"
+	"golang.org/x/text/encoding/charmap"
+	"golang.org/x/text/encoding/unicode"
 )
 
 const benchRows, benchColumns = 100_000, 25
@@ -189,6 +192,102 @@ func readTwice(b *testing.B, path string) (verify, rows time.Duration, heap uint
 		b.Fatalf("%d cells", cells)
 	}
 	return verify, time.Since(start) - verify, heap
+}
+
+// BenchmarkText passes over delimited text of a million rows, which are more
+// than memory is wanted for.
+func BenchmarkText(b *testing.B) {
+	const rows = 1_000_000
+	for _, kind := range []string{"UTF8", "Windows1252", "UTF16"} {
+		b.Run(kind, func(b *testing.B) {
+			path := filepath.Join(b.TempDir(), "register.csv")
+			b.SetBytes(textRegister(b, path, rows, kind))
+			var heap uint64
+			for b.Loop() {
+				heap = max(heap, passText(b, path, rows))
+			}
+			b.ReportMetric(float64(heap)/1e6, "peak-heap-MB")
+		})
+	}
+}
+
+// textRegister writes delimited text and returns how many bytes.
+func textRegister(tb testing.TB, path string, rows int, kind string) int64 {
+	f, err := os.Create(path)
+	if err != nil {
+		tb.Fatal(err)
+	}
+	defer f.Close()
+	var out io.Writer = f
+	switch kind {
+	case "Windows1252":
+		out = charmap.Windows1252.NewEncoder().Writer(f)
+	case "UTF16":
+		out = unicode.UTF16(unicode.LittleEndian, unicode.UseBOM).NewEncoder().Writer(f)
+	}
+	w := bufio.NewWriterSize(out, 1<<20)
+	for r := range rows {
+		fmt.Fprintf(w, "B-%07d;\"Ahornstraße %d; \"\"Hof\"\"\"", r, r%90)
+		for c := 2; c < benchColumns; c++ {
+			fmt.Fprintf(w, ";%d,%d", r*c%1000, c)
+		}
+		fmt.Fprint(w, "\r\n")
+	}
+	if err := w.Flush(); err != nil {
+		tb.Fatal(err)
+	}
+	st, err := f.Stat()
+	if err != nil {
+		tb.Fatal(err)
+	}
+	return st.Size()
+}
+
+// passText returns how much memory was in use at most.
+func passText(tb testing.TB, path string, rows int) (heap uint64) {
+	runtime.GC()
+	c, err := ReadContent(context.Background(), path)
+	if err != nil {
+		tb.Fatal(err)
+	}
+	book, err := Open(path, c)
+	if err != nil {
+		tb.Fatal(err)
+	}
+	defer book.Close()
+	n := 0
+	var m runtime.MemStats
+	if _, err := book.Verify(context.Background(), 0, func(r *Row) {
+		n++
+		if len(r.Cells) != benchColumns || !strings.HasPrefix(r.Cells[1].Text, "Ahornstraße ") {
+			tb.Fatalf("row %d: %v", r.Number, r.Cells)
+		}
+		if n%2000 == 0 {
+			runtime.ReadMemStats(&m)
+			heap = max(heap, m.HeapAlloc)
+		}
+	}); err != nil {
+		tb.Fatal(err)
+	}
+	if n != rows {
+		tb.Fatalf("%d rows", n)
+	}
+	return heap
+}
+
+// Whatever the encoding, text is decoded while it is read: many times more of
+// it than memory is used.
+func TestTextStreams(t *testing.T) {
+	for _, kind := range []string{"UTF8", "Windows1252", "UTF16"} {
+		path := filepath.Join(t.TempDir(), "register.csv")
+		size := textRegister(t, path, 100_000, kind)
+		runtime.GC()
+		var m runtime.MemStats
+		runtime.ReadMemStats(&m)
+		if more := int64(passText(t, path, 100_000)) - int64(m.HeapAlloc); more > size/2 || size < 15e6 {
+			t.Errorf("%s: %d MB of text in %d MB of memory", kind, size>>20, more>>20)
+		}
+	}
 }
 
 // BenchmarkTokens takes only the marks of the sheet apart, unpacked beforehand.

@@ -151,16 +151,41 @@ func (c *Content) binary() bool {
 // oleProblem tells a password-protected workbook from an old .xls: both are
 // compound files, but only the first has a stream named EncryptedPackage.
 func oleProblem(path string) error {
-	b, err := os.ReadFile(path)
+	f, err := os.Open(path)
 	if err != nil {
 		return err
 	}
+	defer f.Close()
 	var name []byte
 	for _, u := range utf16.Encode([]rune("EncryptedPackage")) {
 		name = binary.LittleEndian.AppendUint16(name, u)
 	}
-	if bytes.Contains(b, name) {
+	found, err := holds(f, name)
+	if err != nil {
+		return fmt.Errorf("read %s: %w", path, err)
+	}
+	if found {
 		return &BadFile{"password", "the workbook is password-protected", "remove the password and save again"}
 	}
 	return &BadFile{"old-xls", "the file is an old .xls workbook or another compound document", "open it in a spreadsheet program and save it as .xlsx"}
+}
+
+// holds reports whether what comes from r holds mark.
+func holds(r io.Reader, mark []byte) (bool, error) {
+	buf := make([]byte, 256<<10)
+	kept := 0 // the end of what came before, which mark may begin in
+	for {
+		n, err := r.Read(buf[kept:])
+		n += kept
+		if bytes.Contains(buf[:n], mark) {
+			return true, nil
+		}
+		kept = copy(buf, buf[max(0, n-len(mark)+1):n])
+		if err == io.EOF {
+			return false, nil
+		}
+		if err != nil {
+			return false, err
+		}
+	}
 }

@@ -115,13 +115,28 @@ func (t *text) Rows(ctx context.Context, _ int, visit func(*Row) error) error {
 type parser struct {
 	r         *bufio.Reader
 	delimiter rune
-	record    int // 1-based number of the last record, blank ones counted
+	first     byte // of delimiter
+	record    int  // 1-based number of the last record, blank ones counted
 	fields    []string
 	buf       []byte
 }
 
 func newParser(r io.Reader, delimiter rune) *parser {
-	return &parser{r: bufio.NewReaderSize(r, 64<<10), delimiter: delimiter}
+	return &parser{r: bufio.NewReaderSize(r, 64<<10), delimiter: delimiter, first: string(delimiter)[0]}
+}
+
+// run takes what means itself in one go: as much as is buffered before one of
+// two bytes or a carriage return.
+func (p *parser) run(a, b byte) {
+	in, _ := p.r.Peek(p.r.Buffered()) // which is there
+	i := 0
+	for i < len(in) && in[i] != a && in[i] != b && in[i] != '\r' {
+		i++
+	}
+	if i > 0 {
+		p.buf = append(p.buf, in[:i]...)
+		_, _ = p.r.Discard(i) // which is there
+	}
 }
 
 // A quote that is never closed would swallow the rest of the file unseen.
@@ -179,6 +194,7 @@ func (p *parser) next() ([]string, error) {
 				lines++
 			}
 			p.buf = utf8.AppendRune(p.buf, c)
+			p.run('"', '\n')
 			if lines > maxFieldLines || len(p.buf) > maxFieldBytes {
 				return nil, unclosed()
 			}
@@ -201,6 +217,7 @@ func (p *parser) next() ([]string, error) {
 			return p.fields, nil
 		default:
 			p.buf = utf8.AppendRune(p.buf, c)
+			p.run(p.first, '\n')
 			if len(p.buf) > maxFieldBytes {
 				return nil, &BadFile{"too-wide", fmt.Sprintf("row %d holds a cell of more than %d characters", p.record+1, maxFieldBytes), "check the file and send it again"}
 			}

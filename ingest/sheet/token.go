@@ -54,7 +54,7 @@ type tokens struct {
 type attribute struct{ name, nameEnd, value, valueEnd int }
 
 func newTokens(ctx context.Context, in feed) *tokens {
-	return &tokens{ctx: ctx, in: in, buf: make([]byte, 0, 2*blockBytes)}
+	return &tokens{ctx: ctx, in: in}
 }
 
 // depth is how many elements are open; a start counts itself, an end does not.
