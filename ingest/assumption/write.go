@@ -1,6 +1,7 @@
 package assumption
 
 import (
+	"errors"
 	"fmt"
 	"io"
 	"slices"
@@ -19,6 +20,7 @@ const (
 )
 
 const (
+	font      = "Arial"
 	readMe    = "Read me"
 	lists     = "Lists"
 	headerRow = 3
@@ -84,13 +86,13 @@ func (b *book) styles() (err error) {
 	}
 	wrap := &excelize.Alignment{WrapText: true, Vertical: "top"}
 	b.head = make(&excelize.Style{
-		Font: &excelize.Font{Bold: true, Color: "FFFFFF"}, Fill: excelize.Fill{Type: "pattern", Pattern: 1, Color: []string{"2F4B5C"}},
+		Font: &excelize.Font{Family: font, Size: 9, Bold: true, Color: "FFFFFF"}, Fill: excelize.Fill{Type: "pattern", Pattern: 1, Color: []string{"2F4B5C"}},
 		Alignment: &excelize.Alignment{WrapText: true, Vertical: "center"},
 	})
-	b.about = make(&excelize.Style{Font: &excelize.Font{Italic: true, Color: "444444"}, Alignment: &excelize.Alignment{Vertical: "center"}})
-	b.wrap = make(&excelize.Style{Alignment: wrap})
-	b.plain = make(&excelize.Style{Alignment: &excelize.Alignment{Vertical: "top"}})
-	b.title = make(&excelize.Style{Font: &excelize.Font{Bold: true, Size: 16, Color: "2F4B5C"}})
+	b.about = make(&excelize.Style{Font: &excelize.Font{Family: font, Size: 10, Color: "444444"}, Alignment: &excelize.Alignment{Vertical: "center"}})
+	b.wrap = make(&excelize.Style{Font: &excelize.Font{Family: font, Size: 9}, Alignment: wrap})
+	b.plain = make(&excelize.Style{Font: &excelize.Font{Family: font, Size: 9}, Alignment: &excelize.Alignment{Vertical: "top"}})
+	b.title = make(&excelize.Style{Font: &excelize.Font{Family: font, Bold: true, Size: 16, Color: "2F4B5C"}})
 	return err
 }
 
@@ -100,48 +102,46 @@ func write[T any](b *book, t *table[T], rows []T) error {
 		return err
 	}
 	b.abouts = append(b.abouts, [2]string{t.sheet, t.about})
-	sw, err := b.f.NewStreamWriter(t.sheet)
-	if err != nil {
-		return err
-	}
-	for i, c := range t.columns {
-		if err := sw.SetColWidth(i+1, i+1, c.width); err != nil {
-			return err
-		}
-	}
-	if err := sw.SetPanes(&excelize.Panes{
-		Freeze: true, XSplit: 1, YSplit: headerRow, TopLeftCell: fmt.Sprintf("B%d", headerRow+1), ActivePane: "bottomRight",
-	}); err != nil {
-		return err
-	}
-	if err := sw.SetRow("A1", []any{excelize.Cell{StyleID: b.about, Value: t.about}}, excelize.RowOpts{Height: 20}); err != nil {
-		return err
-	}
-	heads := make([]any, len(t.columns))
-	for i, c := range t.columns {
-		heads[i] = excelize.Cell{StyleID: b.head, Value: c.head}
-	}
-	if err := sw.SetRow(fmt.Sprintf("A%d", headerRow), heads, excelize.RowOpts{Height: 46}); err != nil {
-		return err
-	}
-	for i := range rows {
-		cells := make([]any, len(t.columns))
-		for k, c := range t.columns {
-			style := b.plain
-			if c.width >= 36 {
-				style = b.wrap
-			}
-			cells[k] = excelize.Cell{StyleID: style, Value: c.get(&rows[i])}
-		}
-		if err := sw.SetRow(fmt.Sprintf("A%d", headerRow+1+i), cells); err != nil {
-			return err
-		}
-	}
-	if err := sw.Flush(); err != nil {
-		return err
-	}
-	last := headerRow + len(rows)
 	end := sheet.ColumnLetters(len(t.columns) - 1)
+	last := headerRow + len(rows)
+	set := func(col, row int, v any) error {
+		return b.f.SetCellValue(t.sheet, fmt.Sprintf("%s%d", sheet.ColumnLetters(col), row), v)
+	}
+	if err := set(0, 1, t.about); err != nil {
+		return err
+	}
+	for k, c := range t.columns {
+		letters := sheet.ColumnLetters(k)
+		style := b.plain
+		if c.width >= 36 {
+			style = b.wrap
+		}
+		if err := errors.Join(
+			set(k, headerRow, c.head),
+			b.f.SetColWidth(t.sheet, letters, letters, c.width),
+			b.f.SetCellStyle(t.sheet, fmt.Sprintf("%s%d", letters, headerRow+1), fmt.Sprintf("%s%d", letters, last+roomRows), style),
+		); err != nil {
+			return err
+		}
+		for i := range rows {
+			if v := c.get(&rows[i]); v != nil {
+				if err := set(k, headerRow+1+i, v); err != nil {
+					return err
+				}
+			}
+		}
+	}
+	if err := errors.Join(
+		b.f.SetCellStyle(t.sheet, "A1", "A1", b.about),
+		b.f.SetRowHeight(t.sheet, 1, 20),
+		b.f.SetCellStyle(t.sheet, fmt.Sprintf("A%d", headerRow), fmt.Sprintf("%s%d", end, headerRow), b.head),
+		b.f.SetRowHeight(t.sheet, headerRow, 46),
+		b.f.SetPanes(t.sheet, &excelize.Panes{
+			Freeze: true, XSplit: 1, YSplit: headerRow, TopLeftCell: fmt.Sprintf("B%d", headerRow+1), ActivePane: "bottomRight",
+		}),
+	); err != nil {
+		return err
+	}
 	if err := b.f.AutoFilter(t.sheet, fmt.Sprintf("A%d:%s%d", headerRow, end, last), nil); err != nil {
 		return err
 	}
@@ -158,17 +158,22 @@ func write[T any](b *book, t *table[T], rows []T) error {
 			return err
 		}
 	}
-	landscape, width, height := "landscape", 1, 0
-	if err := b.f.SetPageLayout(t.sheet, &excelize.PageLayoutOptions{Orientation: &landscape, FitToWidth: &width, FitToHeight: &height}); err != nil {
-		return err
-	}
-	fit := true
-	if err := b.f.SetSheetProps(t.sheet, &excelize.SheetPropsOptions{FitToPage: &fit}); err != nil {
+	if err := b.print(t.sheet); err != nil {
 		return err
 	}
 	return b.f.SetDefinedName(&excelize.DefinedName{
 		Name: "_xlnm.Print_Titles", RefersTo: fmt.Sprintf("'%s'!$%d:$%d", t.sheet, headerRow, headerRow), Scope: t.sheet,
 	})
+}
+
+// print makes a sheet one page wide, on its side.
+func (b *book) print(name string) error {
+	landscape, width, height, fit, a4 := "landscape", 1, 0, true, 9
+	return errors.Join(
+		b.f.SetSheetProps(name, &excelize.SheetPropsOptions{FitToPage: &fit}),
+		b.f.SetPageLayout(name, &excelize.PageLayoutOptions{Orientation: &landscape, FitToWidth: &width, FitToHeight: &height, Size: &a4}),
+		b.f.SetHeaderFooter(name, &excelize.HeaderFooterOptions{OddFooter: "&L&8&A&R&8Page &P of &N"}),
+	)
 }
 
 // list puts words on the sheet Lists, once, and returns where they stand.
@@ -254,7 +259,7 @@ func (b *book) explain(set *archetype.Set) error {
 		}
 	}
 	b.f.SetActiveSheet(0)
-	return nil
+	return b.print(readMe)
 }
 
 func climateRows(climates []climate.Climate) []climateMonth {
