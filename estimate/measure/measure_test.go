@@ -198,3 +198,12 @@ func TestCompanionGivesTheAirThatIsMissing(t *testing.T) {
 		t.Errorf("a supply fan of 80 m3/h becomes %g and %g m3/h, %g added", s.Air.SupplyM3H, s.Air.ExtractM3H, added)
 	}
 }
+
+// Every measure belongs to a group, or packages would never hold it.
+func TestEveryMeasureHasAGroup(t *testing.T) {
+	for key := range byKey {
+		if _, ok := groupOf[key]; !ok {
+			t.Errorf("%s is in no group", key)
+		}
+	}
+}
