@@ -117,7 +117,7 @@ func FuzzSharedTexts(f *testing.F) {
 			out.seal()
 			return out, err
 		}
-		got, err := read(64 << 10)
+		got, err := read(oneBlock)
 		if _, again := read(9); (err == nil) != (again == nil) {
 			t.Fatalf("in one block %v, in small ones %v", err, again)
 		}

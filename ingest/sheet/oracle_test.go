@@ -122,6 +122,9 @@ func plainAttr(e xml.StartElement, name string) string {
 	return ""
 }
 
+// oneBlock holds most parts of these tests whole.
+const oneBlock = 4 << 10
+
 // ownRows reads a sheet part by the tokens, in blocks of so many bytes.
 func ownRows(part []byte, book *xlsx, blockBytes int) ([]Row, int, error) {
 	c, err := newCharacters(bytes.NewReader(part))
@@ -153,7 +156,7 @@ func someTexts() *xlsx {
 func checkSheet(t *testing.T, part []byte) {
 	t.Helper()
 	book := someTexts()
-	got, n, err := ownRows(part, book, 64<<10)
+	got, n, err := ownRows(part, book, oneBlock)
 	for _, size := range []int{8, 61} {
 		again, m, err2 := ownRows(part, book, size)
 		if (err == nil) != (err2 == nil) {
@@ -358,7 +361,7 @@ func TestSheetXML(t *testing.T) {
 	} {
 		t.Run(tc.name, func(t *testing.T) {
 			t.Parallel()
-			got, _, err := ownRows([]byte(tc.part), someTexts(), 64<<10)
+			got, _, err := ownRows([]byte(tc.part), someTexts(), oneBlock)
 			switch {
 			case tc.want == nil && err == nil:
 				t.Fatalf("believed: %v", got)
@@ -378,7 +381,7 @@ func TestSheetXML(t *testing.T) {
 func TestCutAnywhere(t *testing.T) {
 	const whole = `<?xml version="1.0"?><!-- a --><worksheet xmlns="u"><sheetData><row r="1"><c r="A1" t="s"><v>0</v></c><c r="B1" t="inlineStr"><is><t>a&amp;b<![CDATA[c]]></t></is></c></row>` +
 		`<row r="2"><c r="A2"><f>1</f><v>1.5</v></c></row></sheetData></worksheet>`
-	if _, n, err := ownRows([]byte(whole), someTexts(), 64<<10); err != nil || n != 2 {
+	if _, n, err := ownRows([]byte(whole), someTexts(), oneBlock); err != nil || n != 2 {
 		t.Fatalf("%d rows, %v", n, err)
 	}
 	for i := range whole {
