@@ -11,12 +11,14 @@ import (
 	"kelvinrow/estimate/building"
 	"kelvinrow/ingest/finding"
 	"kelvinrow/ingest/header"
+	"kelvinrow/ingest/word"
 )
 
 // Options says how to take a file.
 type Options struct {
 	Kind    building.Kind   // how firm its values are; zero means Registered
 	Mapping *header.Mapping // settles what recognition cannot; may be nil
+	Words   word.Own        // beside the words known here; may be nil
 	Today   string          // "2026-12-01"; the latest year allowed is the next one
 	Name    string          // by which the file is known; "" is its base name
 }

@@ -57,6 +57,11 @@ func CheckMapping(m *header.Mapping, today string) error {
 // Reading is what beside its content decides what a file says, in one line:
 // content read in the same way says the same.
 func Reading(opt Options, name string) string {
+	return byColumns(opt, name) + opt.Words.String()
+}
+
+// byColumns is the reading but for words.
+func byColumns(opt Options, name string) string {
 	kind := opt.Kind
 	if kind == building.Default {
 		kind = building.Registered

@@ -25,6 +25,7 @@ type fieldReader struct {
 	decided []bool         // by its own cells, so that nothing need be said
 	small   bool           // "1.234" is more likely a decimal than thousands
 	serial  bool           // its years are day serials without their format
+	own     word.Own
 }
 
 // problem is what a cell's text has against it.
@@ -37,7 +38,7 @@ type problem struct {
 }
 
 func (t *table) fieldReader(f building.Field, columns []*header.Column) fieldReader {
-	fr := fieldReader{field: f, info: f.Info(), columns: columns}
+	fr := fieldReader{field: f, info: f.Info(), columns: columns, own: t.opt.Words}
 	switch f {
 	case building.WallU, building.RoofU, building.FloorU, building.WindowU, building.N50, building.Q50, building.HeatRecovery,
 		building.Efficiency, building.FanPower, building.StoreyHeight, building.Storeys:
@@ -263,7 +264,7 @@ func (fr *fieldReader) word(c *header.Column, in sheet.Cell) (building.Value, ce
 			text = "no cellar"
 		}
 	}
-	w, ok := word.Find(fr.field, text)
+	w, ok := fr.own.Find(fr.field, text)
 	switch {
 	case ok:
 	case fr.field == building.CarrierField:

@@ -65,6 +65,7 @@ func (s *Set) Clone() *Set {
 	}
 	c.Climates = slices.Clone(s.Climates)
 	c.Surveys = slices.Clone(s.Surveys)
+	c.Words = slices.Clone(s.Words)
 	return &c
 }
 

@@ -202,6 +202,14 @@ type SurveyCost struct {
 	Source, Notes string
 }
 
+// OwnWord is a word that somebody's spreadsheets use, beside those the program knows.
+type OwnWord struct {
+	Field   string // key of a field of words, such as "wall_construction"
+	Written string // as it stands in cells
+	Word    string // canonical
+	Notes   string
+}
+
 // Economics holds what money is counted with.
 type Economics struct {
 	Currency     string
@@ -221,6 +229,7 @@ type Set struct {
 	Measures  []Measure
 	Economics Economics
 	Surveys   []SurveyCost
+	Words     []OwnWord
 	Climates  []climate.Climate
 
 	index ruleIndex

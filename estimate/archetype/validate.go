@@ -29,6 +29,7 @@ func (s *Set) Validate() error {
 	v.measures()
 	v.economics()
 	v.surveys()
+	v.words()
 	v.rules()
 	v.contradictions()
 	v.holes()
@@ -57,6 +58,7 @@ const (
 	MeasuresTable  = "measures"
 	EconomicsTable = "economics"
 	SurveyTable    = "survey costs"
+	WordsTable     = "words"
 )
 
 type validator struct {
@@ -292,6 +294,26 @@ func (v *validator) surveys() {
 		if !seen[g] {
 			v.add(SurveyTable, "survey of %q: missing from the survey costs", g)
 		}
+	}
+}
+
+func (v *validator) words() {
+	seen := map[string]string{}
+	for _, w := range v.set.Words {
+		row := rowOf(WordsTable, "word", w.Written)
+		f, ok := building.FieldByKey(w.Field)
+		words := building.Words(f)
+		switch before, twice := seen[w.Field+"\x00"+strings.ToLower(w.Written)]; {
+		case !ok || words == nil:
+			v.at(row, "field", "%q is no field of words", w.Field)
+		case strings.TrimSpace(w.Written) == "":
+			v.at(row, "written", "nothing is written")
+		case !slices.Contains(words, w.Word):
+			v.at(row, "word", "unknown word %q for %s; known are %s", w.Word, w.Field, strings.Join(words, ", "))
+		case twice && before != w.Word:
+			v.at(row, "word", "means %q above and %q here", before, w.Word)
+		}
+		seen[w.Field+"\x00"+strings.ToLower(w.Written)] = w.Word
 	}
 }
 

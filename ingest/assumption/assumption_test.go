@@ -152,6 +152,7 @@ func TestEveryColumnCounts(t *testing.T) {
 	t.Parallel()
 	s := starter(t)
 	// A small set is not to be had: holes would be refused. One write, many edits.
+	s.Words = []archetype.OwnWord{{Field: "wall_construction", Written: "Bruchstein 60er", Word: "stone", Notes: "north office"}}
 	path, before := written(t, s), s.Hash()
 	t.Run("economics", func(t *testing.T) {
 		t.Parallel()
@@ -171,6 +172,7 @@ func TestEveryColumnCounts(t *testing.T) {
 	t.Run("materials", func(t *testing.T) { t.Parallel(); everyColumn(t, path, &materialsTable, s.Materials, before) })
 	t.Run("buildups", func(t *testing.T) { t.Parallel(); everyColumn(t, path, &buildupsTable, layerRows(s), before) })
 	t.Run("rules", func(t *testing.T) { t.Parallel(); everyColumn(t, path, &rulesTable, s.Rules, before) })
+	t.Run("words", func(t *testing.T) { t.Parallel(); everyColumn(t, path, &wordsTable, s.Words, before) })
 	t.Run("surveys", func(t *testing.T) { t.Parallel(); everyColumn(t, path, &surveysTable, s.Surveys, before) })
 }
 

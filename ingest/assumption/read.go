@@ -216,6 +216,9 @@ func (r *reader) set() *archetype.Set {
 	surveys := readTable(r, &surveysTable)
 	place(r, archetype.SurveyTable, &surveysTable, &surveys, func(c *archetype.SurveyCost) string { return c.Group })
 	s.Surveys = surveys.rows
+	words := readTable(r, &wordsTable)
+	place(r, archetype.WordsTable, &wordsTable, &words, func(w *archetype.OwnWord) string { return w.Written })
+	s.Words = words.rows
 	r.climates(s)
 	if r.ctx.Err() != nil || r.broken {
 		return s // what is missing would be complained of a thousand times
@@ -409,7 +412,7 @@ func sheetOf(table string) string {
 	return map[string]string{
 		archetype.EconomicsTable: economicsTable.sheet, archetype.CarriersTable: carriersTable.sheet, archetype.UsesTable: usesTable.sheet,
 		archetype.MeasuresTable: measuresTable.sheet, archetype.RulesTable: rulesTable.sheet, archetype.BuildupsTable: buildupsTable.sheet,
-		archetype.MaterialsTable: materialsTable.sheet, archetype.SurveyTable: surveysTable.sheet,
+		archetype.MaterialsTable: materialsTable.sheet, archetype.SurveyTable: surveysTable.sheet, archetype.WordsTable: wordsTable.sheet,
 	}[table]
 }
 

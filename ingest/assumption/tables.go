@@ -225,6 +225,42 @@ func propertyWords() []string {
 	return out
 }
 
+var wordsTable = table[archetype.OwnWord]{
+	sheet: "Words",
+	about: "Words that your spreadsheets use, beside those the program knows in eight languages: kelvinrow inspect lists the ones it does not know. They hold for files loaded from then on.",
+	columns: []column[archetype.OwnWord]{
+		choice("Field", 22, wordFields(), func(w *archetype.OwnWord) *string { return &w.Field }).named("field").needed(),
+		text("Written", 36, func(w *archetype.OwnWord) *string { return &w.Written }).named("written").needed(),
+		choice("Means", 36, everyWord(), func(w *archetype.OwnWord) *string { return &w.Word }).named("word").needed(),
+		text("Notes", 40, func(w *archetype.OwnWord) *string { return &w.Notes }),
+	},
+}
+
+// wordFields are the fields that hold words, by key.
+func wordFields() []string {
+	var out []string
+	for f := range building.NumFields {
+		if building.Words(building.Field(f)) != nil {
+			out = append(out, building.Field(f).Key())
+		}
+	}
+	return out
+}
+
+// everyWord lists the words of all fields.
+func everyWord() []string {
+	var out []string
+	for f := range building.NumFields {
+		for _, w := range building.Words(building.Field(f)) {
+			if !slices.Contains(out, w) {
+				out = append(out, w)
+			}
+		}
+	}
+	slices.Sort(out)
+	return out
+}
+
 var surveysTable = table[archetype.SurveyCost]{
 	sheet: "Survey costs",
 	about: "What it costs to survey one building for a group of fields.",

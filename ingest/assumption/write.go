@@ -50,6 +50,7 @@ func Write(w io.Writer, set *archetype.Set) error {
 		func() error { return write(b, &buildupsTable, layerRows(set)) },
 		func() error { return write(b, &materialsTable, set.Materials) },
 		func() error { return write(b, &surveysTable, set.Surveys) },
+		func() error { return write(b, &wordsTable, set.Words) },
 		b.writeLists,
 		func() error { return b.explain(set) },
 	}

@@ -3,8 +3,10 @@
 package word
 
 import (
+	"crypto/sha256"
 	_ "embed"
 	"encoding/csv"
+	"fmt"
 	"regexp"
 	"sort"
 	"strings"
@@ -102,6 +104,43 @@ var fields = func() map[building.Field]*field {
 	}
 	return m
 }()
+
+// Own are words that somebody's spreadsheets use, by field and folded text; they come
+// before those known here, and only where they are all of the text.
+type Own map[building.Field]map[string]string
+
+// Add adds one.
+func (o Own) Add(f building.Field, written, word string) {
+	if o[f] == nil {
+		o[f] = map[string]string{}
+	}
+	o[f][cell.Fold(written)] = word
+}
+
+// String names the words by their content, "" without any.
+func (o Own) String() string {
+	var all []string
+	for f, words := range o {
+		for written, w := range words {
+			all = append(all, f.Key()+"\x00"+written+"\x00"+w)
+		}
+	}
+	if len(all) == 0 {
+		return ""
+	}
+	sort.Strings(all)
+	return fmt.Sprintf(" with own words %x", sha256.Sum256([]byte(strings.Join(all, "\n"))))[:len(" with own words ")+12]
+}
+
+// Find is Find with own words first.
+func (o Own) Find(f building.Field, text string) (string, bool) {
+	if len(o[f]) > 0 {
+		if w, ok := o[f][cell.Fold(text)]; ok {
+			return w, true
+		}
+	}
+	return Find(f, text)
+}
 
 // Find returns the canonical word of f that text means. A text that holds a
 // known word among others means the longest one it holds; two equally long

@@ -139,10 +139,14 @@ func unknownCommand(c *cobra.Command, args []string) error {
 // estimateFlags adds the flags of commands that estimate.
 func (a *app) estimateFlags(c *cobra.Command) {
 	c.Flags().StringVar(&a.climate, "climate", "", "climate by `name`, or an .epw file (default that of the last run, or the first of the assumptions)")
-	c.Flags().StringVar(&a.assumptions, "assumptions", "", "`workbook` of assumptions (see: kelvinrow assumptions), the version of a run, or starter (default what the last run was given)")
+	a.assumptionsFlag(c)
 	c.Flags().StringArrayVar(&a.prices, "price", nil, "what if: `carrier=price` per kWh, such as gas=0.14; may be given several times")
 	c.Flags().StringArrayVar(&a.changes, "set", nil, "what if: `owner.quantity=number`, such as new-windows.unit_cost=700; may be given several times")
 	c.Flags().IntVar(&a.workers, "workers", 0, "buildings computed at the same time (default one per processor)")
+}
+
+func (a *app) assumptionsFlag(c *cobra.Command) {
+	c.Flags().StringVar(&a.assumptions, "assumptions", "", "`workbook` of assumptions (see: kelvinrow assumptions), the version of a run, or starter (default what the last run was given)")
 }
 
 // whatIf turns prices and changes into changes.

@@ -77,6 +77,7 @@ them; the version of which one took the place counts again.`,
 	}
 	l.add(c)
 	show.add(c)
+	a.assumptionsFlag(c)
 	c.Flags().BoolVar(&undo, "undo", false, "take the files back")
 	c.Flags().BoolVar(&files, "list", false, "list the files loaded")
 	c.Flags().BoolVar(&prune, "prune", false, "remove earlier versions of files, which --undo could bring back")

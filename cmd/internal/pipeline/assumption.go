@@ -14,9 +14,11 @@ import (
 
 	"kelvinrow/estimate"
 	"kelvinrow/estimate/archetype"
+	"kelvinrow/estimate/building"
 	"kelvinrow/estimate/climate"
 	"kelvinrow/ingest/assumption"
 	"kelvinrow/ingest/finding"
+	"kelvinrow/ingest/word"
 	"kelvinrow/sql/store"
 )
 
@@ -118,6 +120,17 @@ func (s *Session) assumptions(ctx context.Context) (*archetype.Set, string, erro
 	}
 	set, err := unpack(last.Content)
 	return set, last.Name, err
+}
+
+// ownWords are the words of a set for those who read files.
+func ownWords(set *archetype.Set) word.Own {
+	own := word.Own{}
+	for _, w := range set.Words {
+		if f, ok := building.FieldByKey(w.Field); ok {
+			own.Add(f, w.Written, w.Word)
+		}
+	}
+	return own
 }
 
 // lastGiven returns the assumptions of the last run that was no what-if, nil

@@ -138,3 +138,43 @@ func TestStoredRunIsWrittenAgain(t *testing.T) {
 		t.Errorf("after an erasure: %v", err)
 	}
 }
+
+// A word of one's own, given with the assumptions, is known from then on; the same
+// file is read anew with it.
+func TestOwnWordsAreKnownOnceGiven(t *testing.T) {
+	b := newBench(t)
+	source := b.write("stock.csv", "id;use;year built;floor area (m2);wall construction\nA-1;terraced house;1930;95;Bruchstein 60er\n")
+	b.load(LoadOptions{Files: []string{source}, Kind: building.Registered})
+	wall := func() string {
+		t.Helper()
+		bl, _, err := b.s.Store.Building(t.Context(), "p", "A-1")
+		if err != nil {
+			t.Fatal(err)
+		}
+		return bl.Text(building.WallConstruction)
+	}
+	if w := wall(); w != "" && w != "stone" {
+		t.Fatalf("the word means %q", w)
+	}
+	book := filepath.Join(b.dir, "assumptions.xlsx")
+	if _, _, err := b.s.WriteAssumptions(t.Context(), book); err != nil {
+		t.Fatal(err)
+	}
+	f, err := excelize.OpenFile(book)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for cell, v := range map[string]string{"A4": "wall_construction", "B4": "Bruchstein 60er", "C4": "half-timbered"} {
+		if err := f.SetCellValue("Words", cell, v); err != nil {
+			t.Fatal(err)
+		}
+	}
+	if err := f.Save(); err != nil {
+		t.Fatal(err)
+	}
+	b.s.Assumptions = book
+	b.load(LoadOptions{Files: []string{source}, Kind: building.Registered})
+	if w := wall(); w != "half-timbered" {
+		t.Errorf("with a word of its own the wall is %q", w)
+	}
+}

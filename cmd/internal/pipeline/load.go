@@ -71,7 +71,7 @@ type loaded struct {
 func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, error) {
 	began := time.Now()
 	defer func() { s.Timings.Read += time.Since(began) }()
-	read, err := s.readOptions(opt)
+	read, err := s.readOptions(ctx, opt)
 	if err != nil {
 		return nil, err
 	}
@@ -297,12 +297,16 @@ func (s *Session) toFix(ctx context.Context, f loaded, dir string) (string, erro
 	return path, err
 }
 
-func (s *Session) readOptions(opt LoadOptions) (ingest.Options, error) {
+func (s *Session) readOptions(ctx context.Context, opt LoadOptions) (ingest.Options, error) {
 	mapping, err := ReadMapping(opt.Columns)
 	if err != nil {
 		return ingest.Options{}, err
 	}
-	return ingest.Options{Kind: opt.Kind, Mapping: mapping, Today: today()}, nil
+	set, _, err := s.assumptions(ctx)
+	if err != nil {
+		return ingest.Options{}, err
+	}
+	return ingest.Options{Kind: opt.Kind, Mapping: mapping, Today: today(), Words: ownWords(set)}, nil
 }
 
 func today() string { return time.Now().Format("2006-01-02") }
