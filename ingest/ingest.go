@@ -21,6 +21,8 @@ type Options struct {
 	Words   word.Own        // beside the words known here; may be nil
 	Today   string          // "2026-12-01"; the latest year allowed is the next one
 	Name    string          // by which the file is known; "" is its base name
+
+	Portfolio string // that the file is for; a survey form of another is refused; "" for any
 }
 
 // Sink takes what is read. The first call of Sheet comes before any record of
@@ -37,6 +39,7 @@ type Report struct {
 	Bytes    int64
 	Date     string // of the data: from its name, from within, or the file's own
 	Own      bool   // a ranked workbook of this program, which is not read back
+	Form     bool   // a survey form of this program: only what was filled in is read
 	Sheets   []SheetReport
 	Findings []finding.Finding
 	Rows     int // rows of data

@@ -63,10 +63,21 @@ func ReadFile(ctx context.Context, path string, opt Options, sink Sink) (*Report
 			Text: "the file is a workbook that this program wrote, of results or of assumptions, and is not read: defaults would come back as if they were known", Fix: "give the spreadsheets that it was made from"})
 		return r, nil
 	}
+	form, err := findForm(ctx, book)
+	if err != nil {
+		return fault(err)
+	}
+	if form != nil {
+		r.Form = true
+		opt.Kind, opt.Mapping = building.Surveyed, nil
+		if !r.formBelongs(form, opt.Portfolio) {
+			return r, nil
+		}
+	}
 	r.Date, r.dateFrom = fileDate(filepath.Base(path), book.Modified(), content.Changed)
 	read := false
 	for i, info := range book.Sheets() {
-		t := &table{ctx: ctx, book: book, index: i, info: info, opt: opt, report: r, sink: sink, found: newCollector(r.File, info.Name)}
+		t := &table{ctx: ctx, book: book, index: i, info: info, opt: opt, report: r, sink: sink, found: newCollector(r.File, info.Name), form: form}
 		t.out = SheetReport{Name: info.Name, Hidden: info.Hidden}
 		err := t.read()
 		r.Findings = append(r.Findings, t.found.all()...)
@@ -80,8 +91,12 @@ func ReadFile(ctx context.Context, path string, opt Options, sink Sink) (*Report
 		read = read || t.out.Skipped == ""
 	}
 	if !read && !r.Own && !anyError(r.Findings) {
-		r.Findings = append(r.Findings, finding.Finding{Severity: finding.Error, Check: "no-table", File: r.File,
-			Text: "no table of buildings is recognised in the file", Fix: "give the table a header row with known names, or say which column is what in a column file"})
+		f := finding.Finding{Severity: finding.Error, Check: "no-table", File: r.File,
+			Text: "no table of buildings is recognised in the file", Fix: "give the table a header row with known names, or say which column is what in a column file"}
+		if r.Form {
+			f.Text, f.Fix = "the survey form has lost its table, or the headers of it", "copy what was filled in into a new form"
+		}
+		r.Findings = append(r.Findings, f)
 	}
 	finding.Sort(r.Findings)
 	return r, nil

@@ -68,7 +68,11 @@ func (t *table) rows() error {
 		}
 	}
 	r.readConstants()
-	err := t.book.Rows(t.ctx, t.index, r.row)
+	take := r.row
+	if t.form != nil {
+		take = r.formRow
+	}
+	err := t.book.Rows(t.ctx, t.index, take)
 	t.describe(r.seen)
 	return err
 }
@@ -201,7 +205,7 @@ func (r *rowReader) read(in *sheet.Row, id string, surveyed bool) bool {
 		}
 	}
 	if spoilt != nil {
-		none := !r.rowSized()
+		none := r.form == nil && !r.rowSized() // a form's rows add to what is known
 		if none {
 			spoilt.Severity = finding.Error
 			spoilt.Text += ", and the row has no other size"

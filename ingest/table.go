@@ -43,7 +43,8 @@ type table struct {
 	layout   header.Table
 	plan     *header.Plan
 	building *building.Sheet
-	undated  int // rows without a date of their own
+	undated  int   // rows without a date of their own
+	form     *form // nil but in a survey form
 }
 
 // read returns an error only for what keeps the run from going on.
@@ -52,8 +53,14 @@ func (t *table) read() error {
 		t.skip("it is " + t.info.Other)
 		return nil
 	}
+	if t.form != nil {
+		return t.readForm()
+	}
 	if err := t.survey(); err != nil {
 		return t.damaged(err)
+	}
+	if t.formAlone() {
+		return nil
 	}
 	if len(t.head) == 0 {
 		t.skip("it is empty")

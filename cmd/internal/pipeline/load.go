@@ -111,7 +111,7 @@ func (s *Session) Load(ctx context.Context, opt LoadOptions) (*LoadOutcome, erro
 		return nil, err
 	}
 	for _, f := range all {
-		if f.report.SetAside == 0 {
+		if f.report.SetAside == 0 || f.report.Form { // a form is mended itself
 			continue
 		}
 		path, err := s.toFix(ctx, f, opt.MendDir)
@@ -157,6 +157,9 @@ func (s *Session) readOne(ctx context.Context, l *store.Load, path string, read 
 		if read.Kind, err = sourceKind(ctx, l, read.Name); err != nil {
 			return f, err
 		}
+	}
+	if ingest.IsForm(path) {
+		read.Kind, read.Mapping = building.Surveyed, nil // whatever the other files are
 	}
 	sum, size, err := contentHash(path)
 	hashed := err == nil // where not, reading will say why
@@ -306,7 +309,7 @@ func (s *Session) readOptions(ctx context.Context, opt LoadOptions) (ingest.Opti
 	if err != nil {
 		return ingest.Options{}, err
 	}
-	return ingest.Options{Kind: opt.Kind, Mapping: mapping, Today: today(), Words: ownWords(set)}, nil
+	return ingest.Options{Kind: opt.Kind, Mapping: mapping, Today: today(), Words: ownWords(set), Portfolio: s.Portfolio}, nil
 }
 
 func today() string { return time.Now().Format("2006-01-02") }
