@@ -369,11 +369,11 @@ func (l *Load) ToWatch(ctx context.Context, yield func(*building.Building, []bui
 	}
 	return groups(ctx, l.tx, l.portfolio, `building in (
 		with b as (
-			select building, count(distinct sheet) as sheets, max(sheet) as last,
+			select building, min(sheet) as first, max(sheet) as last,
 				bool_or(floor_area is not null or volume is not null or gross_volume is not null) as sized,
-				lower(regexp_replace(building, '\s+', '', 'g')) as bare
+				lower(translate(building, E' \t\n\r\u00a0', '')) as bare
 			from kelvinrow.record where portfolio = $1`+counting+` group by building)
-		select building from b where last > $2 and (sheets > 1 or not sized)
+		select building from b where last > $2 and (first <> last or not sized)
 			or bare in (select bare from b group by bare having count(*) > 1 and max(last) > $2))`, []any{l.before}, yield)
 }
 
