@@ -115,7 +115,8 @@ func (b *book) addAssumptions() error {
 	if err := b.link(pg, cellName(1, s.row), overviewTarget); err != nil {
 		return err
 	}
-	s.r.text(2, b.st.subtitle(), "Everything else on this sheet is a record of what the energy was computed with.")
+	s.r.text(2, b.st.subtitle(), fmt.Sprintf("Everything else on this sheet is a record of what the energy was computed with: version %.12s%s (kelvinrow assumptions writes it to edit).",
+		b.in.Run.Assumptions, from(clean(b.in.Origin))))
 
 	b.economics(s)
 	b.carriers(s)
@@ -140,6 +141,13 @@ func (b *book) addAssumptions() error {
 		return err
 	}
 	return b.setPrint(pg, layout{titleRows: "1:3"})
+}
+
+func from(origin string) string {
+	if origin == "" {
+		return ""
+	}
+	return " from " + origin
 }
 
 func (b *book) economics(s *sheetBuilder) {

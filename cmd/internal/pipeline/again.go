@@ -20,6 +20,7 @@ import (
 // assumptions.
 type kept struct {
 	Title     string
+	Origin    string
 	Top       int
 	Findings  []finding.Finding
 	Programme *workbook.Programme         `json:",omitempty"`
@@ -29,7 +30,7 @@ type kept struct {
 
 // keep packs what a workbook is written from.
 func keep(in *workbook.Input) ([]byte, error) {
-	k := kept{Title: in.Title, Top: in.Top, Findings: in.Findings, Programme: in.Programme}
+	k := kept{Title: in.Title, Origin: in.Origin, Top: in.Top, Findings: in.Findings, Programme: in.Programme}
 	if p := in.Programme; p != nil {
 		k.Packages = map[string][]result.Package{}
 		for _, c := range p.Chosen {
@@ -80,7 +81,7 @@ func (s *Session) WriteRun(ctx context.Context, number int, out string) (*result
 	}
 	in := &workbook.Input{
 		Run: run, Buildings: buildings, Findings: k.Findings, Set: set, Climate: &set.Climates[0],
-		Top: k.Top, Yardstick: rank.Yardstick(run.Yardstick), Title: k.Title, Programme: k.Programme,
+		Top: k.Top, Yardstick: rank.Yardstick(run.Yardstick), Title: k.Title, Programme: k.Programme, Origin: k.Origin,
 	}
 	if k.Programme != nil {
 		index := make(map[string]int, len(buildings))

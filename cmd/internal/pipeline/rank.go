@@ -106,7 +106,7 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 	in := &workbook.Input{
 		Run: run, Buildings: buildings, Findings: union(append(stored, about.list...), findings), Set: basis.Set,
 		Climate: basis.Climate, Top: opt.Top, Yardstick: opt.Yardstick, Title: opt.Title,
-		Programme: plan,
+		Programme: plan, Origin: rests.name,
 	}
 	if run.Options, err = keep(in); err != nil {
 		return nil, err
