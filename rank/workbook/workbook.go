@@ -34,7 +34,7 @@ type Input struct {
 	Set       *archetype.Set
 	Climate   *climate.Climate
 	Origin    string // where Set came from
-	Top       int // rows per measure sheet; 0 is all
+	Top       int    // rows per measure sheet; 0 is all
 	Yardstick rank.Yardstick
 	Title     string     // "" makes one of the portfolio's name
 	Programme *Programme // nil without one
