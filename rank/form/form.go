@@ -207,8 +207,8 @@ func (b *writer) head() error {
 			return err
 		}
 	}
-	for row, height := range map[int]float64{asideRow: 19, bandRow: 14, hintRow: 44, headRow: 40} {
-		if err := b.f.SetRowHeight(s, row, height); err != nil {
+	for k, height := range []float64{19, 14, 44, 40} {
+		if err := b.f.SetRowHeight(s, asideRow+k, height); err != nil {
 			return err
 		}
 	}

@@ -27,8 +27,8 @@ func (b *writer) record() error {
 		if c.key == "" {
 			continue
 		}
-		for row, v := range map[int]string{2: c.key, 3: c.head, 4: c.unitNamed()} {
-			if err := b.set(s, n, row, v, 0); err != nil {
+		for k, v := range []string{c.key, c.head, c.unitNamed()} {
+			if err := b.set(s, n, 2+k, v, 0); err != nil {
 				return err
 			}
 		}
