@@ -121,7 +121,7 @@ heat balance, and ranks the buildings by what each retrofit measure saves.`,
 	f.Lookup("db").DefValue = ""
 	f.StringVar(&a.portfolio, "portfolio", "default", "`name` of the portfolio: keeps clients apart in one store")
 	f.BoolVarP(&a.quiet, "quiet", "q", false, "print nothing but errors and what was asked for")
-	root.AddCommand(a.demo(), a.screen(), a.inspect(), a.load(), a.rank(), a.explain(), a.runs(), a.assumptionsCommand(), a.storeCommand())
+	root.AddCommand(a.demo(), a.screen(), a.inspect(), a.load(), a.rank(), a.survey(), a.explain(), a.runs(), a.assumptionsCommand(), a.storeCommand())
 	return root
 }
 
