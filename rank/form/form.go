@@ -288,7 +288,7 @@ func (c *column) look() (format, align string) {
 	}
 	switch c.field.Info().Type {
 	case building.Number:
-		return "", "right"
+		return numberFormat, "right"
 	case building.Year:
 		return "", "center"
 	}

@@ -72,7 +72,7 @@ func (b *writer) costs() string {
 }
 
 // guideWidth is the width of the guide's column, in digits.
-const guideWidth = 105
+const guideWidth = 88
 
 func (b *writer) guide() error {
 	row := 0
@@ -81,7 +81,7 @@ func (b *writer) guide() error {
 		if err := b.set(guideSheet, 0, row, text, style); err != nil {
 			return err
 		}
-		lines := (len([]rune(text)) + guideWidth - 1) / guideWidth
+		lines := len([]rune(text))/guideWidth + 1
 		return b.f.SetRowHeight(guideSheet, row, float64(max(lines, 1))*size+3)
 	}
 	if err := b.f.SetColWidth(guideSheet, "A", "A", guideWidth); err != nil {
@@ -100,9 +100,9 @@ func (b *writer) guide() error {
 			}
 		}
 	}
-	portrait, paper, one, fit, no := "portrait", paperA4, 1, true, false
+	portrait, paper, one, zero, fit, no := "portrait", paperA4, 1, 0, true, false
 	return errors.Join(
-		b.f.SetPageLayout(guideSheet, &excelize.PageLayoutOptions{Size: &paper, Orientation: &portrait, FitToWidth: &one, FitToHeight: &one}),
+		b.f.SetPageLayout(guideSheet, &excelize.PageLayoutOptions{Size: &paper, Orientation: &portrait, FitToWidth: &one, FitToHeight: &zero}),
 		b.f.SetSheetProps(guideSheet, &excelize.SheetPropsOptions{FitToPage: &fit}),
 		b.f.SetSheetView(guideSheet, 0, &excelize.ViewOptions{ShowGridLines: &no}),
 		b.f.SetHeaderFooter(guideSheet, &excelize.HeaderFooterOptions{OddFooter: "&L&8Survey form " + b.out.Number + "&R&8Page &P of &N"}),

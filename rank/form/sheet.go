@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"strings"
+	"unicode/utf16"
 
 	"github.com/xuri/excelize/v2"
 
@@ -156,7 +157,7 @@ func (b *writer) listRule(v *excelize.DataValidation, title string, words []stri
 // Print set-up: A4 lying, the columns of one subject to a page.
 const (
 	paperA4    = 9
-	printScale = 76 // per cent: 184 digits of width to a page
+	printScale = 72 // per cent: some 196 digits of width to a page; the widest takes 181
 )
 
 func (b *writer) print() error {
@@ -169,25 +170,32 @@ func (b *writer) print() error {
 		}
 	}
 	landscape, paper, order, scale := "landscape", paperA4, "downThenOver", uint(printScale)
-	side, end, margin := 0.4, 0.6, 0.3
+	side, above, end, margin := 0.4, 0.75, 0.6, 0.3
 	return errors.Join(
 		b.f.SetPageLayout(s, &excelize.PageLayoutOptions{Size: &paper, Orientation: &landscape, PageOrder: &order, AdjustTo: &scale}),
-		b.f.SetPageMargins(s, &excelize.PageLayoutMarginsOptions{Left: &side, Right: &side, Top: &side, Bottom: &end, Header: &margin, Footer: &margin}),
+		b.f.SetPageMargins(s, &excelize.PageLayoutMarginsOptions{Left: &side, Right: &side, Top: &above, Bottom: &end, Header: &margin, Footer: &margin}),
 		b.f.SetHeaderFooter(s, &excelize.HeaderFooterOptions{
-			OddFooter: "&L&8" + footer(ingest.FormTitle(b.out.Number, b.in.Portfolio)) + "&C&8Grey: known. White: to fill in.&R&8Page &P of &N",
+			OddHeader: "&L&\"Arial,Bold\"&11" + coded(ingest.FormTitle(b.out.Number, b.in.Portfolio), 60) + "&\"Arial,Regular\"&8\n" + coded(b.in.Choice, 150),
+			OddFooter: "&L&8Grey: known. White: to fill in. A row counts with its date and surveyor.&R&8Page &P of &N",
 		}),
+		b.f.SetDefinedName(&excelize.DefinedName{Name: "_xlnm.Print_Area", Scope: s, RefersTo: fmt.Sprintf("%s!$A$%d:$%s$%d", s, bandRow, letters(len(columns)-1), firstRow+len(b.in.Buildings)-1)}),
 		b.f.SetDefinedName(&excelize.DefinedName{Name: "_xlnm.Print_Titles", Scope: s,
 			RefersTo: fmt.Sprintf("%s!$A:$%s,%s!$%d:$%d", s, letters(fixed-1), s, bandRow, headRow)}),
 	)
 }
 
-// footer keeps what a footer would take for a code.
-func footer(s string) string {
-	s = strings.ReplaceAll(s, "&", "&&")
-	if r := []rune(s); len(r) > 90 {
-		s = strings.TrimRight(string(r[:90]), "&")
+// coded is text as a page's header takes it: an ampersand begins a code there, and
+// all of it together may have 255 UTF-16 characters.
+func coded(s string, most int) string {
+	wide := func(r []rune) int { return len(utf16.Encode(r)) + strings.Count(string(r), "&") }
+	r := []rune(s)
+	if wide(r) > most {
+		for wide(r) > most-1 {
+			r = r[:len(r)-1]
+		}
+		r = append(r, '…')
 	}
-	return s
+	return strings.ReplaceAll(string(r), "&", "&&")
 }
 
 // protect keeps hands off the structure; there is no password, for whoever knows

@@ -20,6 +20,9 @@ const (
 const (
 	textFormat = "@"
 	dateFormat = "yyyy-mm-dd"
+	// numberFormat keeps numbers off the edge: an indent would do, but LibreOffice
+	// prints it in some rows and not in others.
+	numberFormat = "General_)"
 )
 
 type look struct {
@@ -39,8 +42,15 @@ type styles struct {
 	err  error
 }
 
+// newStyles also sets the font that the widths of columns are counted in.
 func newStyles(f *excelize.File) (*styles, error) {
-	return &styles{f: f, made: map[look]int{}}, f.SetDefaultFont(font)
+	if err := f.SetDefaultFont(font); err != nil {
+		return nil, err
+	}
+	size := 10.0
+	base := f.Styles.Fonts.Font[0]
+	base.Scheme, base.Sz.Val = nil, &size // a scheme's font would win over the name
+	return &styles{f: f, made: map[look]int{}}, nil
 }
 
 func (s *styles) id(l look) int {

@@ -112,11 +112,11 @@ func (s *Session) toSurvey(ctx context.Context, opt *SurveyOptions) (ids []strin
 	if ids = nearTheCut(run, buildings, y, opt.Budget, opt.Count); len(ids) == 0 {
 		return nil, "", fmt.Errorf("in run %d no building near a cut has inputs by default: name buildings (--buildings), a district or a measure", run.Number)
 	}
-	cut := "the best quarter of its list ends"
+	cut := "the best quarter"
 	if opt.Budget > 0 {
-		cut = fmt.Sprintf("the best of its list have used up %.0f", opt.Budget)
+		cut = fmt.Sprintf("%.0f spent", opt.Budget)
 	}
-	return ids, fmt.Sprintf("%s that stand, for some measure of run %d, near where %s, first those with the greatest share of inputs by default × saving.", counted(len(ids)), run.Number, cut), nil
+	return ids, fmt.Sprintf("%s near the cut (%s) of a measure in run %d where most saving rests on defaults (their share of the inputs × saving).", counted(len(ids)), cut, run.Number), nil
 }
 
 func counted(n int) string {
