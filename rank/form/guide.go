@@ -81,7 +81,7 @@ func (b *writer) guide() error {
 		if err := b.set(guideSheet, 0, row, text, style); err != nil {
 			return err
 		}
-		lines := len([]rune(text))/guideWidth + 1
+		lines := len([]rune(text))/(guideWidth+10) + 1 // letters are narrower than digits
 		return b.f.SetRowHeight(guideSheet, row, float64(max(lines, 1))*size+3)
 	}
 	if err := b.f.SetColWidth(guideSheet, "A", "A", guideWidth); err != nil {

@@ -3,6 +3,7 @@ package form
 import (
 	"errors"
 	"fmt"
+	"strconv"
 	"strings"
 	"unicode/utf16"
 
@@ -81,8 +82,8 @@ func (b *writer) validate() error {
 
 func dateRule(v *excelize.DataValidation) error {
 	v.SetError(excelize.DataValidationErrorStyleStop, "Survey date", "Write a date from 2000 on, such as 2026-03-01.")
-	const firstOf2000 = 36526 // as a day serial
-	return v.SetRange(firstOf2000, 0, excelize.DataValidationTypeDate, excelize.DataValidationOperatorGreaterThanOrEqual)
+	const firstOf2000 = "36526" // as a day serial
+	return v.SetRange(firstOf2000, "", excelize.DataValidationTypeDate, excelize.DataValidationOperatorGreaterThanOrEqual)
 }
 
 // rule sets what a column may hold; false where anything goes.
@@ -111,15 +112,16 @@ func (b *writer) rule(c *column, v *excelize.DataValidation) (bool, error) {
 		low, high, ok := c.bounds()
 		if !ok {
 			v.SetError(excelize.DataValidationErrorStyleStop, title, "Write a number"+unit+", not negative.")
-			return true, v.SetRange(0, 0, excelize.DataValidationTypeDecimal, excelize.DataValidationOperatorGreaterThanOrEqual)
+			return true, v.SetRange("0", "", excelize.DataValidationTypeDecimal, excelize.DataValidationOperatorGreaterThanOrEqual)
 		}
 		v.SetError(excelize.DataValidationErrorStyleStop, title, fmt.Sprintf("Write a number from %s to %s%s.", plain(low), plain(high), unit))
-		return true, v.SetRange(low, high, excelize.DataValidationTypeDecimal, excelize.DataValidationOperatorBetween)
+		return true, v.SetRange(plain(low), plain(high), excelize.DataValidationTypeDecimal, excelize.DataValidationOperatorBetween)
 	}
 	return false, nil
 }
 
-func plain(v float64) string { return strings.TrimSuffix(fmt.Sprintf("%.6g", v), ".0") }
+// plain is a number without an exponent.
+func plain(v float64) string { return strconv.FormatFloat(v, 'f', -1, 64) }
 
 func thisYear(date string) int {
 	y := 0
