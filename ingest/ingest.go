@@ -56,13 +56,14 @@ func (r *Report) MarshalJSON() ([]byte, error) {
 		File     string            `json:"file"`
 		SHA256   string            `json:"sha256"`
 		Bytes    int64             `json:"bytes"`
+		Form     bool              `json:"survey_form,omitempty"`
 		Date     string            `json:"date"`
 		Sheets   []SheetReport     `json:"sheets"`
 		Findings []finding.Finding `json:"findings"`
 		Rows     int               `json:"rows"`
 		Used     int               `json:"used"`
 		SetAside int               `json:"set_aside"`
-	}{r.File, hex.EncodeToString(r.SHA256[:]), r.Bytes, r.Date, r.Sheets, r.Findings, r.Rows, r.Used, r.SetAside})
+	}{r.File, hex.EncodeToString(r.SHA256[:]), r.Bytes, r.Form, r.Date, r.Sheets, r.Findings, r.Rows, r.Used, r.SetAside})
 }
 
 // SheetReport says how a sheet was read.

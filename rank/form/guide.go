@@ -32,7 +32,7 @@ func (b *writer) parts() []part {
 		"Measure inside, between finished surfaces, for floor area, height and volume; outside for footprint and perimeter. Heated means kept warm in winter on purpose.",
 		"A U-value goes in only when it was measured (heat-flow meter over several winter days) or follows from layers that were seen; otherwise give the construction and the years and leave it empty. n50 comes from a test at 50 Pa and from nothing else.",
 		"Airflows are those in use, measured at the terminals or read from the unit's panel, not those of the data sheet.",
-		"Rows may be sorted, filtered or deleted. Headers must stay as they are. On paper each subject has a page; the first two columns and the headers repeat.",
+		"Rows may be filtered and, with the protection taken off, sorted or deleted; headers must stay as they are. On paper each subject has a page; the first two columns and the headers repeat.",
 	}}
 	back := part{"How to send it back", []string{
 		"Save it as .xlsx (an .ods must be saved as .xlsx before it is loaded) and return the whole workbook: two hidden sheets belong to it.",
@@ -101,7 +101,9 @@ func (b *writer) guide() error {
 		}
 	}
 	portrait, paper, one, zero, fit, no := "portrait", paperA4, 1, 0, true, false
+	margin := 0.55
 	return errors.Join(
+		b.f.SetPageMargins(guideSheet, &excelize.PageLayoutMarginsOptions{Top: &margin, Bottom: &margin}),
 		b.f.SetPageLayout(guideSheet, &excelize.PageLayoutOptions{Size: &paper, Orientation: &portrait, FitToWidth: &one, FitToHeight: &zero}),
 		b.f.SetSheetProps(guideSheet, &excelize.SheetPropsOptions{FitToPage: &fit}),
 		b.f.SetSheetView(guideSheet, 0, &excelize.ViewOptions{ShowGridLines: &no}),
