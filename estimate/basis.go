@@ -11,6 +11,7 @@ import (
 
 	"kelvinrow/estimate/archetype"
 	"kelvinrow/estimate/climate"
+	"kelvinrow/estimate/finance"
 	"kelvinrow/estimate/measure"
 )
 
@@ -27,6 +28,11 @@ type Basis struct {
 
 	companion *archetype.Measure
 	carriers  map[string]*archetype.Carrier
+
+	// Present value of 1 a year over the calculation period: rising with the price
+	// of a carrier, by its word; and level.
+	rising map[string]float64
+	level  float64
 }
 
 // NewBasis checks that set and climate can carry an estimate.
@@ -38,9 +44,13 @@ func NewBasis(set *archetype.Set, c *climate.Climate) (*Basis, error) {
 	if err != nil {
 		return nil, err
 	}
-	b := &Basis{Set: set, Climate: c, Measures: measures, carriers: map[string]*archetype.Carrier{}}
+	b := &Basis{Set: set, Climate: c, Measures: measures, carriers: map[string]*archetype.Carrier{}, rising: map[string]float64{}}
+	rate, period := set.Economics.DiscountRate, set.Economics.PeriodYears
+	b.level = finance.PresentValueFactor(rate, 0, period)
 	for i := range set.Carriers {
-		b.carriers[set.Carriers[i].Word] = &set.Carriers[i]
+		c := &set.Carriers[i]
+		b.carriers[c.Word] = c
+		b.rising[c.Word] = finance.PresentValueFactor(rate, c.PriceRise, period)
 	}
 	for i := range measures {
 		if measures[i].Terms.Key == measure.CompanionKey {

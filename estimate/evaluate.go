@@ -251,7 +251,7 @@ func (b *Basis) fill(out *result.Building, m *Model, o *outcome) {
 	}
 	out.NeedKWh = o.needKWh
 	out.DeliveredKWh, out.FansKWh = o.heatKWh, o.fansKWh
-	out.DesignLoadW = b.designLoad(s, o)
+	out.DesignLoadW = b.designLoad(s, &o.in)
 	m.Facts.DesignLoadW = out.DesignLoadW
 	out.CO2Kg, out.MoneyPerYear = o.co2Kg, o.money
 	out.MeteredKWh = m.meteredKWh
@@ -261,18 +261,13 @@ func (b *Basis) fill(out *result.Building, m *Model, o *outcome) {
 
 // designLoad is the heat load in design weather (EN 12831, simplified): the
 // flows are those of the design temperature at the windiest month's mean wind.
-func (b *Basis) designLoad(s *state.State, o *outcome) float64 {
-	c := airflow.Prepare(&o.in.Air)
-	return balance.DesignHeatLoadW(o.in.TransmissionWK, c.HeatWK(b.Climate.DesignOutdoorC, b.windiest()), s.IndoorC, b.Climate.DesignOutdoorC)
-}
-
-// windiest is the mean wind of the windiest month at 10 m, m/s.
-func (b *Basis) windiest() float64 {
+func (b *Basis) designLoad(s *state.State, in *balance.Input) float64 {
 	wind := 0.0
 	for i := range b.Climate.Months {
 		wind = math.Max(wind, b.Climate.Months[i].Wind10M)
 	}
-	return wind
+	c := airflow.Prepare(&in.Air)
+	return balance.DesignHeatLoadW(in.TransmissionWK, c.HeatWK(b.Climate.DesignOutdoorC, wind), s.IndoorC, b.Climate.DesignOutdoorC)
 }
 
 // meanU is the area-weighted U-value of one kind of element.

@@ -5,9 +5,6 @@ import (
 	"math"
 	"slices"
 
-	"kelvinrow/estimate/airflow"
-	"kelvinrow/estimate/balance"
-	"kelvinrow/estimate/building"
 	"kelvinrow/estimate/finance"
 	"kelvinrow/estimate/measure"
 	"kelvinrow/estimate/result"
@@ -34,8 +31,7 @@ func (b *Basis) packages(p *packer, m *Model, before *outcome, worth Worth) []re
 	p.all = p.all[:0]
 	load := func(s *state.State) float64 {
 		in := balanceInput(s)
-		c := airflow.Prepare(&in.Air)
-		return balance.DesignHeatLoadW(in.TransmissionWK, c.HeatWK(b.Climate.DesignOutdoorC, b.windiest()), s.IndoorC, b.Climate.DesignOutdoorC)
+		return b.designLoad(s, &in)
 	}
 	p.combiner.Combine(b.Measures, m.State, &m.Facts, load, func(c *measure.Combination) {
 		p.all = append(p.all, b.pack(p, c, m, before))
@@ -86,14 +82,12 @@ func (b *Basis) replacementCost(parts []measure.Part) float64 {
 // different lives are replaced within it and worth something at its end, in the
 // manner of EN 15459-1.
 func (b *Basis) packageWorth(k *result.Package, replaced float64, m *Model, before *outcome) float64 {
-	rate, period := b.Set.Economics.DiscountRate, b.Set.Economics.PeriodYears
 	was, is, power := b.carriers[m.State.System.Carrier], b.carriers[k.CarrierAfter], b.carriers["electricity"]
-	pv := func(rise float64) float64 { return finance.PresentValueFactor(rate, rise, period) }
 	return -k.Cost - replaced +
-		before.heatKWh*was.PricePerKWh*pv(was.PriceRise) -
-		k.HeatAfterKWh*is.PricePerKWh*pv(is.PriceRise) +
-		(before.fansKWh-k.FansAfterKWh)*power.PricePerKWh*pv(power.PriceRise) -
-		k.UpkeepPerYear*pv(0)
+		before.heatKWh*was.PricePerKWh*b.rising[was.Word] -
+		k.HeatAfterKWh*is.PricePerKWh*b.rising[is.Word] +
+		(before.fansKWh-k.FansAfterKWh)*power.PricePerKWh*b.rising[power.Word] -
+		k.UpkeepPerYear*b.level
 }
 
 // pareto keeps packages of which none is both cheaper and worth more, by cost; of
@@ -178,19 +172,4 @@ func thin(kept []result.Package, value func(*result.Package) float64) []result.P
 		}
 	}
 	return out
-}
-
-// Packages makes the packages of one building, cheapest first, the first to do
-// nothing; nil where it cannot be estimated.
-func (b *Basis) Packages(bl *building.Building, worth Worth) []result.Package {
-	m, err := b.Model(bl)
-	if err != nil {
-		return nil
-	}
-	var base outcome
-	b.run(m.State, &base)
-	var out result.Building
-	b.fill(&out, m, &base)
-	var p packer
-	return b.packages(&p, m, &base, worth)
 }

@@ -26,14 +26,7 @@ func (r *rowReader) formRow(in *sheet.Row) error {
 		return nil
 	}
 	r.out.Rows++
-	for len(r.seen) < len(in.Cells) {
-		r.seen = append(r.seen, columnSeen{})
-	}
-	for i, c := range in.Cells {
-		if !c.Blank() {
-			r.seen[i].look(c)
-		}
-	}
+	r.lookAt(in)
 	fault := func(check, column, field, raw, text, fix string) {
 		r.found.add(finding.Finding{Severity: finding.Error, Check: check, Row: in.Number, Column: column, Field: field, Building: id, Raw: raw, Text: text, Fix: fix})
 	}

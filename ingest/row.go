@@ -95,6 +95,18 @@ func (r *rowReader) readConstants() {
 	}
 }
 
+// lookAt counts what the columns of a row hold.
+func (r *rowReader) lookAt(in *sheet.Row) {
+	for len(r.seen) < len(in.Cells) {
+		r.seen = append(r.seen, columnSeen{})
+	}
+	for i, c := range in.Cells {
+		if !c.Blank() {
+			r.seen[i].look(c)
+		}
+	}
+}
+
 // row takes one row. It fails only when the sink does.
 func (r *rowReader) row(in *sheet.Row) error {
 	if in.Number < r.layout.DataFrom || in.Blank() {
@@ -106,14 +118,7 @@ func (r *rowReader) row(in *sheet.Row) error {
 		return nil
 	}
 	r.out.Rows++
-	for len(r.seen) < len(in.Cells) {
-		r.seen = append(r.seen, columnSeen{})
-	}
-	for i, c := range in.Cells {
-		if !c.Blank() {
-			r.seen[i].look(c)
-		}
-	}
+	r.lookAt(in)
 	fault := func(check, column, field, raw, text, fix string) {
 		r.found.add(finding.Finding{Severity: finding.Error, Check: check, Row: in.Number, Column: column, Field: field, Building: id, Raw: raw, Text: text, Fix: fix})
 	}

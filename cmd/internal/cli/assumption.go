@@ -2,7 +2,6 @@ package cli
 
 import (
 	"fmt"
-	"path/filepath"
 
 	"github.com/spf13/cobra"
 
@@ -22,8 +21,8 @@ until another is given.`,
   kelvinrow rank --assumptions assumptions.xlsx -o ranked.xlsx`,
 		Args: args(cobra.NoArgs),
 		RunE: func(c *cobra.Command, _ []string) error {
-			if filepath.Ext(out) != ".xlsx" {
-				return usagef("--output %s: the workbook's name must end in .xlsx", out)
+			if err := xlsxName(out, "workbook"); err != nil {
+				return err
 			}
 			ctx := c.Context()
 			return a.within(ctx, func(s *pipeline.Session) error {

@@ -9,6 +9,7 @@ import (
 	"fmt"
 	"io"
 	"os"
+	"path/filepath"
 	"strings"
 	"syscall"
 
@@ -147,6 +148,14 @@ func (a *app) estimateFlags(c *cobra.Command) {
 
 func (a *app) assumptionsFlag(c *cobra.Command) {
 	c.Flags().StringVar(&a.assumptions, "assumptions", "", "`workbook` of assumptions (see: kelvinrow assumptions), the version of a run, or starter (default what the last run was given)")
+}
+
+// xlsxName checks that what a command writes is called a workbook.
+func xlsxName(out, what string) error {
+	if filepath.Ext(out) != ".xlsx" {
+		return usagef("--output %s: the %s's name must end in .xlsx", out, what)
+	}
+	return nil
 }
 
 // whatIf turns prices and changes into changes.

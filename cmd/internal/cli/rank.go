@@ -2,7 +2,6 @@ package cli
 
 import (
 	"fmt"
-	"path/filepath"
 	"strconv"
 	"text/tabwriter"
 
@@ -89,8 +88,8 @@ func (a *app) runsWrite() *cobra.Command {
 			if err != nil || n < 1 {
 				return usagef("%q is not the number of a run (see: kelvinrow runs)", given[0])
 			}
-			if filepath.Ext(out) != ".xlsx" {
-				return usagef("--output %s: the workbook's name must end in .xlsx", out)
+			if err := xlsxName(out, "workbook"); err != nil {
+				return err
 			}
 			ctx := c.Context()
 			return a.within(ctx, func(s *pipeline.Session) error {

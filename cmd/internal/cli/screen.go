@@ -37,8 +37,8 @@ func (r *rankFlags) options() (pipeline.RankOptions, error) {
 	if r.top < 0 {
 		return pipeline.RankOptions{}, usagef("--top %d: give 0 for all rows, or a count", r.top)
 	}
-	if ext := filepath.Ext(r.out); ext != ".xlsx" {
-		return pipeline.RankOptions{}, usagef("--output %s: the workbook's name must end in .xlsx", r.out)
+	if err := xlsxName(r.out, "workbook"); err != nil {
+		return pipeline.RankOptions{}, err
 	}
 	// Said now, not after minutes of work.
 	if info, err := os.Stat(filepath.Dir(r.out)); err != nil || !info.IsDir() {

@@ -70,8 +70,8 @@ its best quarter ends, those with most saving that rests on defaults.`,
 
 // surveyChoice checks that one way of choosing is given, and reads ids.
 func surveyChoice(c *cobra.Command, opt *pipeline.SurveyOptions, buildings string) error {
-	if filepath.Ext(opt.Out) != ".xlsx" {
-		return usagef("--output %s: the form's name must end in .xlsx", opt.Out)
+	if err := xlsxName(opt.Out, "form"); err != nil {
+		return err
 	}
 	if info, err := os.Stat(filepath.Dir(opt.Out)); err != nil || !info.IsDir() {
 		return usagef("--output %s: there is no folder %s", opt.Out, filepath.Dir(opt.Out))

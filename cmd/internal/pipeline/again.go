@@ -1,10 +1,7 @@
 package pipeline
 
 import (
-	"bytes"
-	"compress/gzip"
 	"context"
-	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
@@ -39,15 +36,11 @@ func keep(in *workbook.Input) ([]byte, error) {
 			k.Packages[b.ID] = b.Packages
 		}
 	}
-	var b bytes.Buffer
-	z := gzip.NewWriter(&b)
-	if err := json.NewEncoder(z).Encode(&k); err != nil {
+	content, err := pack(&k)
+	if err != nil {
 		return nil, fmt.Errorf("pack the run: %w", err)
 	}
-	if err := z.Close(); err != nil {
-		return nil, err
-	}
-	return b.Bytes(), nil
+	return content, nil
 }
 
 // errBare is said of a run that was stored before everything was kept, or of which
@@ -64,18 +57,14 @@ func (s *Session) WriteRun(ctx context.Context, number int, out string) (*result
 		return nil, fmt.Errorf("run %d: %w", number, errBare)
 	}
 	var k kept
-	z, err := gzip.NewReader(bytes.NewReader(run.Options))
-	if err == nil {
-		err = json.NewDecoder(z).Decode(&k)
-	}
-	if err != nil {
+	if err := unpack(run.Options, &k); err != nil {
 		return nil, fmt.Errorf("run %d: %w", number, err)
 	}
 	a, err := s.Store.Assumptions(ctx, s.Portfolio, run.Assumptions)
 	if err != nil {
 		return nil, fmt.Errorf("run %d: %w", number, err)
 	}
-	set, err := unpack(a.Content)
+	set, err := storedSet(a.Content)
 	if err != nil {
 		return nil, fmt.Errorf("run %d: %w", number, err)
 	}

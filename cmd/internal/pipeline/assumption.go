@@ -1,10 +1,7 @@
 package pipeline
 
 import (
-	"bytes"
-	"compress/gzip"
 	"context"
-	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
@@ -97,7 +94,7 @@ func (s *Session) assumptions(ctx context.Context) (*archetype.Set, string, erro
 		if err != nil {
 			return nil, "", err
 		}
-		set, err := unpack(stored.Content)
+		set, err := storedSet(stored.Content)
 		return set, stored.Name, err
 	case named != "":
 		return nil, "", fmt.Errorf("assumptions %q: give a workbook that ends in .xlsx, the version of a run, or %q", named, StarterName)
@@ -112,13 +109,13 @@ func (s *Session) assumptions(ctx context.Context) (*archetype.Set, string, erro
 			// The rules are those of this version of the program, the climate the one
 			// that was chosen, which may be of a file.
 			var kept *archetype.Set
-			if kept, err = unpack(last.Content); err == nil {
+			if kept, err = storedSet(last.Content); err == nil {
 				set.Climates = append(kept.Climates[:1:1], set.Climates...)
 			}
 		}
 		return set, name, err
 	}
-	set, err := unpack(last.Content)
+	set, err := storedSet(last.Content)
 	return set, last.Name, err
 }
 
@@ -173,36 +170,36 @@ func (s *Session) climate(set *archetype.Set) (*climate.Climate, error) {
 	return climate.Find(s.Climate, set.Climates)
 }
 
-// pack makes what is stored of a basis: the set with the climate used first. Of the
-// program's own assumptions only that climate is kept.
-func (f *inForce) pack() (*store.Assumptions, error) {
+// everything is the set in force with all its climates, the one used first.
+func (f *inForce) everything() *archetype.Set {
 	set := *f.basis.Set
 	set.Climates = []climate.Climate{*f.basis.Climate}
-	if f.name != StarterName {
-		for _, c := range f.basis.Set.Climates {
-			if c.Name != f.basis.Climate.Name {
-				set.Climates = append(set.Climates, c)
-			}
+	for _, c := range f.basis.Set.Climates {
+		if c.Name != f.basis.Climate.Name {
+			set.Climates = append(set.Climates, c)
 		}
 	}
-	var b bytes.Buffer
-	z := gzip.NewWriter(&b)
-	if err := json.NewEncoder(z).Encode(&set); err != nil {
-		return nil, fmt.Errorf("pack the assumptions: %w", err)
-	}
-	if err := z.Close(); err != nil {
-		return nil, err
-	}
-	return &store.Assumptions{Version: f.basis.Hash(), Name: f.name, Content: b.Bytes()}, nil
+	return &set
 }
 
-func unpack(content []byte) (*archetype.Set, error) {
-	z, err := gzip.NewReader(bytes.NewReader(content))
-	if err != nil {
-		return nil, fmt.Errorf("stored assumptions: %w", err)
+// store makes what is stored of the assumptions. Of the program's own only the
+// climate used is kept.
+func (f *inForce) store() (*store.Assumptions, error) {
+	set := f.everything()
+	if f.name == StarterName {
+		set.Climates = set.Climates[:1]
 	}
+	content, err := pack(set)
+	if err != nil {
+		return nil, fmt.Errorf("pack the assumptions: %w", err)
+	}
+	return &store.Assumptions{Version: f.basis.Hash(), Name: f.name, Content: content}, nil
+}
+
+// storedSet is the set of stored assumptions.
+func storedSet(content []byte) (*archetype.Set, error) {
 	set := &archetype.Set{}
-	if err := json.NewDecoder(z).Decode(set); err != nil {
+	if err := unpack(content, set); err != nil {
 		return nil, fmt.Errorf("stored assumptions: %w", err)
 	}
 	set.Index()
@@ -216,14 +213,7 @@ func (s *Session) WriteAssumptions(ctx context.Context, out string) (name, versi
 	if err != nil {
 		return "", "", err
 	}
-	set := *f.basis.Set
-	set.Climates = []climate.Climate{*f.basis.Climate}
-	for _, c := range f.basis.Set.Climates {
-		if c.Name != f.basis.Climate.Name {
-			set.Climates = append(set.Climates, c)
-		}
-	}
-	file, err := stage(out, func(w io.Writer) error { return assumption.Write(w, &set) })
+	file, err := stage(out, func(w io.Writer) error { return assumption.Write(w, f.everything()) })
 	defer func() { file.discard() }()
 	if err != nil {
 		return "", "", fmt.Errorf("write %s: %w", out, err)

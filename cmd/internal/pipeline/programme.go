@@ -55,7 +55,7 @@ func decide(ctx context.Context, o *ProgrammeOptions, keys []string, buildings [
 	opt := programme.Options{Budgets: o.Budgets, CarryOver: o.CarryOver, MinShare: o.Shares, Workers: workers}
 	var problems []error
 	var wishes []string
-	mark := func(ids []string, what string, set func(*programme.Building)) {
+	mark := func(ids []string, what, wish string, set func(*programme.Building)) {
 		for _, id := range ids {
 			i, ok := index[id]
 			if !ok {
@@ -65,14 +65,11 @@ func decide(ctx context.Context, o *ProgrammeOptions, keys []string, buildings [
 			set(&in[i])
 		}
 		if len(ids) > 0 {
-			wishes = append(wishes, fmt.Sprintf("Done in any case: %s.", strings.Join(ids, ", ")))
+			wishes = append(wishes, fmt.Sprintf("%s: %s.", wish, strings.Join(ids, ", ")))
 		}
 	}
-	mark(o.Must, "must", func(b *programme.Building) { b.Must = true })
-	mark(o.Never, "never", func(b *programme.Building) { b.Never = true })
-	if len(o.Never) > 0 {
-		wishes[len(wishes)-1] = fmt.Sprintf("Left alone: %s.", strings.Join(o.Never, ", "))
-	}
+	mark(o.Must, "must", "Done in any case", func(b *programme.Building) { b.Must = true })
+	mark(o.Never, "never", "Left alone", func(b *programme.Building) { b.Never = true })
 	for _, key := range slices.Sorted(maps.Keys(o.Capacity)) {
 		m := slices.Index(keys, key)
 		if m < 0 {

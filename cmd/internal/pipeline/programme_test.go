@@ -1,15 +1,10 @@
 package pipeline
 
 import (
-	"context"
 	"math/bits"
 	"strings"
 	"testing"
 
-	"kelvinrow/estimate"
-	"kelvinrow/estimate/archetype"
-	"kelvinrow/estimate/building"
-	"kelvinrow/estimate/climate"
 	"kelvinrow/estimate/result"
 	"kelvinrow/rank"
 )
@@ -17,32 +12,10 @@ import (
 // packaged estimates a part of the demo portfolio with its packages.
 func packaged(t *testing.T, by rank.Yardstick) ([]string, []result.Building) {
 	t.Helper()
-	set, err := archetype.Starter()
-	if err != nil {
-		t.Fatal(err)
-	}
-	climates, err := climate.Starter()
-	if err != nil {
-		t.Fatal(err)
-	}
-	b, err := estimate.NewBasis(set, &climates[0])
-	if err != nil {
-		t.Fatal(err)
-	}
+	b := starterBasis(t)
 	b.Worth = worth(by)
 	stock := demoStock(t)[:300]
-	results, err := b.Estimate(context.Background(), 2, func(yield func(*building.Building) error) error {
-		for _, bl := range stock {
-			if err := yield(bl); err != nil {
-				return err
-			}
-		}
-		return nil
-	}, nil)
-	if err != nil {
-		t.Fatal(err)
-	}
-	return b.Keys(), results
+	return b.Keys(), estimatedBy(t, b, stock)
 }
 
 // A programme keeps to what was asked: budgets, lists, shares, capacities; and says

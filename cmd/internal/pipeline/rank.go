@@ -49,7 +49,7 @@ func (s *Session) Rank(ctx context.Context, opt RankOptions, findings []finding.
 		return nil, err
 	}
 	basis := rests.basis
-	kept, err := rests.pack()
+	kept, err := rests.store()
 	if err != nil {
 		return nil, err
 	}

@@ -59,7 +59,7 @@ func stock(t *testing.T, paths ...string) []*building.Building {
 	return out
 }
 
-func estimated(t *testing.T, stock []*building.Building) (*estimate.Basis, []result.Building) {
+func starterBasis(t *testing.T) *estimate.Basis {
 	t.Helper()
 	set, err := archetype.Starter()
 	if err != nil {
@@ -73,6 +73,11 @@ func estimated(t *testing.T, stock []*building.Building) (*estimate.Basis, []res
 	if err != nil {
 		t.Fatal(err)
 	}
+	return b
+}
+
+func estimatedBy(t *testing.T, b *estimate.Basis, stock []*building.Building) []result.Building {
+	t.Helper()
 	results, err := b.Estimate(context.Background(), 2, func(yield func(*building.Building) error) error {
 		for _, bl := range stock {
 			if err := yield(bl); err != nil {
@@ -84,7 +89,13 @@ func estimated(t *testing.T, stock []*building.Building) (*estimate.Basis, []res
 	if err != nil {
 		t.Fatal(err)
 	}
-	return b, results
+	return results
+}
+
+func estimated(t *testing.T, stock []*building.Building) (*estimate.Basis, []result.Building) {
+	t.Helper()
+	b := starterBasis(t)
+	return b, estimatedBy(t, b, stock)
 }
 
 func demoStock(t *testing.T) []*building.Building {
